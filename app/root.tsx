@@ -1,0 +1,13 @@
+import { Outlet, Scripts, ScrollRestoration } from "react-router";
+
+export default function Root() {
+  return (
+    <html lang="en">
+      <body>
+        <Outlet />
+        <ScrollRestoration />
+        <Scripts />
+      </body>
+    </html>
+  );
+}
