@@ -1,0 +1,149 @@
+/**
+ * The demo: builds if needed, starts a storage and a mail catcher on this machine, migrates, seeds
+ * the invented study and serves until stopped. Everything it keeps stands in one folder.
+ */
+import { type ChildProcess, spawn, spawnSync } from "node:child_process";
+import { existsSync, mkdirSync, readdirSync, statSync } from "node:fs";
+import { join, resolve } from "node:path";
+import { startMailCatcher } from "./demo/mail-catcher.ts";
+import { findFreePort, isFree } from "./demo/ports.ts";
+import { DEMO_PEOPLE, seedDemo } from "./demo/seed.ts";
+import { BUCKET, FAKE_KEYS, startStorageFake } from "./demo/storage-fake.ts";
+
+const root = join(import.meta.dirname, "..");
+
+async function main(): Promise<void> {
+  const data = resolve(process.env.OGEE_DATA ?? join(root, ".data", "demo"));
+  mkdirSync(data, { recursive: true });
+  buildIfNeeded();
+
+  const port = await choosePort();
+  const address = `http://127.0.0.1:${port}`;
+  const storage = await startStorageFake({
+    directory: join(data, "storage"),
+    port: await findFreePort(port + 1000),
+    pageOrigin: address,
+  });
+  const mail = await startMailCatcher({
+    smtp: await findFreePort(port + 2000),
+    page: await findFreePort(port + 3000),
+  });
+  const env: Record<string, string> = {
+    NODE_ENV: "production",
+    HOST: "127.0.0.1",
+    PORT: String(port),
+    PUBLIC_URL: address,
+    OGEE_DATA: data,
+    OGEE_DEMO: "1",
+    S3_ENDPOINT: storage.endpoint,
+    S3_REGION: "us-east-1",
+    S3_BUCKET: BUCKET,
+    S3_ACCESS_KEY_ID: FAKE_KEYS.accessKeyId,
+    S3_SECRET_ACCESS_KEY: FAKE_KEYS.secretAccessKey,
+    SMTP_URL: mail.smtpUrl,
+    MAIL_FROM: "ogee@ogee.example",
+    SESSION_SECRET: "the demo keeps no secrets: it is bound to loopback",
+  };
+
+  let server: ChildProcess | null = null;
+  let stopping = false;
+  const stop = async (code: number) => {
+    if (stopping) return;
+    stopping = true;
+    if (server && server.exitCode === null) {
+      const ended = new Promise<void>((done) => server?.once("close", () => done()));
+      server.kill("SIGTERM");
+      await ended;
+    }
+    await mail.stop();
+    await storage.stop();
+    process.exit(code);
+  };
+  process.on("SIGINT", () => void stop(0));
+  process.on("SIGTERM", () => void stop(0));
+
+  try {
+    await seedDemo({ ...process.env, ...env }, (line) => console.log(line));
+  } catch (error) {
+    console.error(error);
+    await stop(1);
+    return;
+  }
+  if (stopping) return;
+  // In a process group of its own: Ctrl-C reaches this parent alone, which ends it in order.
+  server = spawn(process.execPath, ["--import", "tsx", "scripts/start.ts"], {
+    cwd: root,
+    env: { ...process.env, ...env },
+    stdio: ["ignore", "inherit", "inherit"],
+    detached: true,
+  });
+  server.once("exit", (code) => {
+    if (!stopping) {
+      console.error(`The server ended by itself (exit ${code}).`);
+      void stop(1);
+    }
+  });
+  await waitUntilReady(address, () => stopping);
+  if (stopping) return;
+  for (const person of DEMO_PEOPLE) {
+    console.log(`sign-in ${person.role} ${person.email} ${person.password}`);
+  }
+  console.log(`mail ${mail.pageUrl}`);
+  console.log(`ready ${address}`);
+}
+
+/** PORT where it is set (and then it must be free), else 4300 or the next free one. */
+async function choosePort(): Promise<number> {
+  const asked = process.env.PORT;
+  if (!asked) return findFreePort(4300);
+  const port = Number(asked);
+  if (!Number.isInteger(port) || port < 1 || port > 65535) {
+    throw new Error(`PORT is "${asked}": give a number from 1 to 65535.`);
+  }
+  if (!(await isFree(port))) {
+    throw new Error(`Port ${port} is taken: set PORT to another, or leave it out.`);
+  }
+  return port;
+}
+
+/** Builds where there is no build, or where a source is newer than it. */
+function buildIfNeeded(): void {
+  const built = join(root, "build", "server", "index.js");
+  if (existsSync(built) && statSync(built).mtimeMs > newestSource()) return;
+  console.log("Building the application.");
+  const build = spawnSync(
+    process.execPath,
+    [join(root, "node_modules/@react-router/dev/bin.js"), "build"],
+    { cwd: root, stdio: ["ignore", "ignore", "inherit"] },
+  );
+  if (build.status !== 0) throw new Error("The application could not be built; see above.");
+}
+
+function newestSource(): number {
+  const files = ["app", "public"].flatMap((folder) =>
+    readdirSync(join(root, folder), { recursive: true, withFileTypes: true })
+      .filter((entry) => entry.isFile())
+      .map((entry) => join(entry.parentPath, entry.name)),
+  );
+  const settings = ["package-lock.json", "vite.config.ts", "react-router.config.ts"];
+  return Math.max(
+    ...[...files, ...settings.map((name) => join(root, name))].map(
+      (path) => statSync(path).mtimeMs,
+    ),
+  );
+}
+
+async function waitUntilReady(address: string, gaveUp: () => boolean): Promise<void> {
+  const until = Date.now() + 60_000;
+  while (Date.now() < until && !gaveUp()) {
+    const answer = await fetch(`${address}/ready`).catch(() => null);
+    if (answer?.ok) return;
+    await new Promise((next) => setTimeout(next, 100));
+  }
+  if (!gaveUp()) throw new Error(`The server did not answer at ${address}/ready within a minute.`);
+}
+
+main().catch((error: unknown) => {
+  console.error(error instanceof Error ? error.message : error);
+  process.exit(1);
+});
