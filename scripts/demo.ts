@@ -3,7 +3,7 @@
  * the invented study and serves until stopped. Everything it keeps stands in one folder.
  */
 import { type ChildProcess, spawn, spawnSync } from "node:child_process";
-import { existsSync, mkdirSync, readdirSync, statSync } from "node:fs";
+import { existsSync, mkdirSync, readdirSync, statSync, writeFileSync } from "node:fs";
 import { join, resolve } from "node:path";
 import { startMailCatcher } from "./demo/mail-catcher.ts";
 import { findFreePort, isFree } from "./demo/ports.ts";
@@ -14,7 +14,7 @@ const root = join(import.meta.dirname, "..");
 
 async function main(): Promise<void> {
   const data = resolve(process.env.OGEE_DATA ?? join(root, ".data", "demo"));
-  mkdirSync(data, { recursive: true });
+  markFolder(data);
   buildIfNeeded();
 
   const port = await choosePort();
@@ -90,6 +90,19 @@ async function main(): Promise<void> {
   }
   console.log(`mail ${mail.pageUrl}`);
   console.log(`ready ${address}`);
+}
+
+/** Says in the folder that it is the demo's, so that a reset knows what it may clear. */
+function markFolder(data: string): void {
+  const mark = join(data, "demo.json");
+  if (existsSync(mark)) return;
+  if (existsSync(data) && readdirSync(data).length > 0) {
+    throw new Error(
+      `${data} holds something else than the demo: name another folder in OGEE_DATA.`,
+    );
+  }
+  mkdirSync(data, { recursive: true });
+  writeFileSync(mark, `${JSON.stringify({ madeBy: "npm run demo" })}\n`);
 }
 
 /** PORT where it is set (and then it must be free), else 4300 or the next free one. */
