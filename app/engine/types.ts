@@ -423,3 +423,73 @@ export interface WindowView {
     share: { K: number | null; B: number | null; I: number | null };
   } | null;
 }
+
+// ---------------------------------------------------------------- between windows, fit and pool
+
+/** Sample indices of one window in its recording; they may lie outside of it. */
+export interface WindowSpan {
+  onset: number;
+  /** Half-open [baselineStart, baselineEnd). */
+  baselineStart: number;
+  baselineEnd: number;
+  /** Closed [start, end]. */
+  start: number;
+  end: number;
+  /** Closed span from the earlier of the two starts to the later end. */
+  spanStart: number;
+  spanEnd: number;
+}
+
+/** What stands in a protocol's `onset` for the movement that the rig should have made. */
+export interface ExpectedMovement {
+  amplitudeDeg: number;
+  durationMs: number;
+}
+
+/** What the movement after an onset was; null where it cannot be measured. */
+export interface Movement {
+  /** Which way: 1 is the axis' positive direction. */
+  sign: 1 | -1 | null;
+  amplitudeDeg: number | null;
+  durationMs: number | null;
+  /** Largest |ω| of the movement, rad/s. */
+  peakVelocityRadPerS: number | null;
+}
+
+/** Columns relative to a baseline, of equal length; the torque with the rig's own part removed. */
+export interface WindowColumns {
+  angleRad: Float64Array;
+  velocityRadPerS: Float64Array;
+  accelerationRadPerS2: Float64Array;
+  torqueNm: Float64Array;
+}
+
+/** Which terms are fitted, which are given, and whether they are bounded at 0. */
+export interface ImpedanceModel {
+  /** Terms that are estimated, in the order K, B, I. */
+  free: Term[];
+  /** Values that are given; SI, limb only. */
+  fixed: Partial<Impedance>;
+  nonnegative: boolean;
+}
+
+/** One least-squares fit of the model to columns. */
+export type ModelFit =
+  | {
+      status: "fitted";
+      /** Fitted or given values; null where a term is not in the model. */
+      parameters: Record<Term, number | null>;
+      /** Free terms that are held at 0 by the bound. */
+      bound: Term[];
+      /** Of the free columns, each scaled to unit 2-norm. */
+      conditionNumber: number;
+      /** (XᵀX)⁻¹ of the free columns that are not held at 0, row-major, in the order of `covarianceTerms`. */
+      covarianceUnscaled: Float64Array;
+      covarianceTerms: Term[];
+      modelledNm: Float64Array;
+      residualNm: Float64Array;
+    }
+  | { status: "too_short" }
+  | { status: "singular" };
+
+export type FittedModel = Extract<ModelFit, { status: "fitted" }>;
