@@ -4,12 +4,8 @@
  * adds: sway, tremor, mains, sensor noise, a reflex torque after the ramp, the rig's own inertia,
  * and a few honest defects. The same seed gives the same bytes.
  */
-import {
-  minimumJerkAcceleration,
-  minimumJerkPosition,
-  minimumJerkVelocity,
-} from "#app/engine/math/minimum-jerk.ts";
-import { createRandom, type Random } from "#app/engine/math/random.ts";
+import { type MovementState, minimumJerk } from "#app/engine/math/minimum-jerk.ts";
+import { type Random, seededRandom } from "#app/engine/math/random.ts";
 import type { Impedance } from "#app/engine/types.ts";
 
 export const LAB_NAME = "Harbour Street movement room";
@@ -217,7 +213,7 @@ function planRamps(random: Random, recording: ScenarioRecording): Ramp[] {
   return kinds.map((kind, i) => ({
     ...kind,
     startS:
-      Math.round((FIRST_RAMP_S + i * RAMP_EVERY_S + 0.15 * random.next()) * RATE_HZ) / RATE_HZ,
+      Math.round((FIRST_RAMP_S + i * RAMP_EVERY_S + 0.15 * uniform(random)) * RATE_HZ) / RATE_HZ,
     amplitudeRad: kind.sign * amplitudeDeg * DEG * (1 + 0.004 * gaussian(random)),
     stiffness: 1 + 0.035 * gaussian(random),
     damping: 1 + 0.05 * gaussian(random),
@@ -226,31 +222,14 @@ function planRamps(random: Random, recording: ScenarioRecording): Ramp[] {
   }));
 }
 
-interface Motion {
-  angleRad: number;
-  velocityRadPerS: number;
-  accelerationRadPerS2: number;
-}
-
 /** Ramp, hold and slow return; at rest before and after. */
-function motionOf(ramp: Ramp, timeS: number): Motion {
+function motionOf(ramp: Ramp, timeS: number): MovementState {
   const sinceS = timeS - ramp.startS;
   const durationS = RAMP_DURATION_MS / 1000;
-  const A = ramp.amplitudeRad;
-  if (sinceS <= 0) return { angleRad: 0, velocityRadPerS: 0, accelerationRadPerS2: 0 };
   const backS = sinceS - durationS - HOLD_S;
-  if (backS <= 0) {
-    return {
-      angleRad: minimumJerkPosition(A, durationS, sinceS),
-      velocityRadPerS: minimumJerkVelocity(A, durationS, sinceS),
-      accelerationRadPerS2: minimumJerkAcceleration(A, durationS, sinceS),
-    };
-  }
-  return {
-    angleRad: A - minimumJerkPosition(A, RETURN_S, backS),
-    velocityRadPerS: -minimumJerkVelocity(A, RETURN_S, backS),
-    accelerationRadPerS2: -minimumJerkAcceleration(A, RETURN_S, backS),
-  };
+  if (backS <= 0) return minimumJerk(ramp.amplitudeRad, durationS, sinceS);
+  const back = minimumJerk(-ramp.amplitudeRad, RETURN_S, backS);
+  return { ...back, position: ramp.amplitudeRad + back.position };
 }
 
 /** A burst of torque against the stretch: rises in 15 ms and is over after 70 ms. */
@@ -260,20 +239,25 @@ function reflexTorqueNm(ramp: Ramp, timeS: number): number {
   return ramp.sign * ramp.reflexNm * Math.sin(Math.PI * x ** 0.7) ** 2;
 }
 
+/** Uniform over [0, 1). */
+function uniform(random: Random): number {
+  return random.nextUint32() / 2 ** 32;
+}
+
 /** Box and Muller 1958. */
 function gaussian(random: Random): number {
-  const u = 1 - random.next();
-  return Math.sqrt(-2 * Math.log(u)) * Math.cos(2 * Math.PI * random.next());
+  const u = 1 - uniform(random);
+  return Math.sqrt(-2 * Math.log(u)) * Math.cos(2 * Math.PI * uniform(random));
 }
 
 /** Slow sway of the background torque, N·m: four slow sines and a tremor. */
 function makeSway(random: Random, active: boolean): (timeS: number) => number {
   const waves = [0.23, 0.41, 0.83, 1.37].map((hz) => ({
     hz: hz * (1 + 0.1 * gaussian(random)),
-    phase: 2 * Math.PI * random.next(),
+    phase: 2 * Math.PI * uniform(random),
     nm: 0.012 * (active ? 2.5 : 1),
   }));
-  waves.push({ hz: 8.7, phase: 2 * Math.PI * random.next(), nm: active ? 0.004 : 0.0015 });
+  waves.push({ hz: 8.7, phase: 2 * Math.PI * uniform(random), nm: active ? 0.004 : 0.0015 });
   return (timeS) =>
     waves.reduce((sum, w) => sum + w.nm * Math.sin(2 * Math.PI * w.hz * timeS + w.phase), 0);
 }
@@ -288,14 +272,14 @@ const HEAD = [
 
 /** The raw file of one recording: text with a preamble, a header row, a units row and CSV rows. */
 export function makeRecordingFile(recording: ScenarioRecording, seed: number): Uint8Array {
-  const random = createRandom(seed);
+  const random = seededRandom(seed);
   const ramps = planRamps(random, recording);
   const isActive = recording.condition.isActive;
   const axes = AXES.map((axis) => ({
     ramps: ramps.filter((ramp) => ramp.axis === axis.name),
     sway: makeSway(random, isActive),
     backgroundNm: isActive ? 0.35 : 0.12 + 0.05 * gaussian(random),
-    mainsPhase: 2 * Math.PI * random.next(),
+    mainsPhase: 2 * Math.PI * uniform(random),
     // On a left hand the rig turns the other way about the flexion axis.
     fileSign: axis.name === "FE" && recording.participant.testedSide === "left" ? -1 : 1,
     truth: ([1, -1] as const).map((sign) =>
@@ -310,7 +294,7 @@ export function makeRecordingFile(recording: ScenarioRecording, seed: number): U
 
 /** The rig alone, moved through the same ramps: what its own K, B, I are fitted from. */
 export function makeEmptyRigFile(seed: number): Uint8Array {
-  const random = createRandom(seed);
+  const random = seededRandom(seed);
   const [participant] = PARTICIPANTS;
   const [condition] = CONDITIONS;
   const ramps = planRamps(random, {
@@ -324,7 +308,7 @@ export function makeEmptyRigFile(seed: number): Uint8Array {
     ramps: ramps.filter((ramp) => ramp.axis === axis.name),
     sway: () => 0,
     backgroundNm: 0,
-    mainsPhase: 2 * Math.PI * random.next(),
+    mainsPhase: 2 * Math.PI * uniform(random),
     fileSign: 1,
     truth: [nothing, nothing],
   }));
@@ -373,11 +357,11 @@ function sampleAxis(axis: AxisScenario, timeS: number, random: Random) {
   if (ramp) {
     const motion = motionOf(ramp, timeS);
     const limb = axis.truth[ramp.sign > 0 ? 0 : 1] as Impedance;
-    angleRad = motion.angleRad;
+    angleRad = motion.position;
     torqueNm +=
-      (limb.K * ramp.stiffness + RIG.K) * motion.angleRad +
-      (limb.B * ramp.damping + RIG.B) * motion.velocityRadPerS +
-      (limb.I + RIG.I) * motion.accelerationRadPerS2 +
+      (limb.K * ramp.stiffness + RIG.K) * motion.position +
+      (limb.B * ramp.damping + RIG.B) * motion.velocity +
+      (limb.I + RIG.I) * motion.acceleration +
       reflexTorqueNm(ramp, timeS);
   }
   torqueNm += 0.0012 * Math.sin(2 * Math.PI * 50 * timeS + axis.mainsPhase);
