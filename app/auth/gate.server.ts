@@ -1,4 +1,5 @@
-import type { Desk } from "./context.server.ts";
+import type { Store } from "#app/db/client.server.ts";
+import type { Clock } from "#app/services/clock.server.ts";
 import { openSessions, type Sessions } from "./session.server.ts";
 import { openSignIn, type SignIn } from "./sign-in.server.ts";
 
@@ -18,7 +19,7 @@ export interface GateOptions {
 }
 
 export async function openGate(
-  desk: Pick<Desk, "store" | "clock">,
+  desk: { store: Store; clock: Clock },
   options: GateOptions,
 ): Promise<Gate> {
   return {

@@ -17,7 +17,11 @@ export interface Present {
 export function findPerson(request: Request, context: Context): Promise<Visitor | null> {
   const known = context.get(visitorContext);
   if (known !== null) return known;
-  const found = findVisitor(context.get(deskContext), context.get(gateContext).sessions, request);
+  const found = findVisitor(
+    context.get(deskContext).store,
+    context.get(gateContext).sessions,
+    request,
+  );
   context.set(visitorContext, found);
   return found;
 }

@@ -1,16 +1,23 @@
 import { createHash, randomBytes } from "node:crypto";
-import { and, eq, isNull, lt } from "drizzle-orm";
 import { createSessionStorage, type SessionStorage } from "react-router";
-import type { Transaction } from "#app/db/client.server.ts";
+import type { Store, Transaction } from "#app/db/client.server.ts";
 import { recordEvent } from "#app/db/events.server.ts";
-import { people, sessions } from "#app/db/schema.ts";
-import type { Desk } from "./context.server.ts";
+import { findPerson } from "#app/db/people.server.ts";
+import {
+  deleteSessionsEndedBefore,
+  findOpenSession,
+  insertSession,
+  revokeSession,
+  updateSessionLab,
+  updateSessionUse,
+} from "#app/db/sessions.server.ts";
+import type { Clock } from "#app/services/clock.server.ts";
 
 const HOUR_MS = 3_600_000;
 /** A session ends this long after it was last used. */
-export const IDLE_MS = 12 * HOUR_MS;
+const IDLE_MS = 12 * HOUR_MS;
 /** However much it is used, it ends this long after signing in. */
-export const ABSOLUTE_MS = 7 * 24 * HOUR_MS;
+const ABSOLUTE_MS = 7 * 24 * HOUR_MS;
 /** Noting each use would write with each request. */
 const NOTE_USE_EVERY_MS = 60_000;
 const KEEP_ENDED_MS = 30 * 24 * HOUR_MS;
@@ -36,10 +43,9 @@ export interface Visitor {
  *   alone and bound to this host
  */
 export function openSessions(
-  desk: Pick<Desk, "store" | "clock">,
+  { store, clock }: { store: Store; clock: Clock },
   options: { secret: string; secure: boolean },
 ): Sessions {
-  const { store, clock } = desk;
   return createSessionStorage<SessionContent>({
     cookie: {
       name: options.secure ? "__Host-ogee" : "ogee",
@@ -50,69 +56,47 @@ export function openSessions(
       secrets: [options.secret],
       maxAge: ABSOLUTE_MS / 1000,
     },
-    createData: async ({ personId, labId }) => {
+    createData: async ({ personId, labId = null }) => {
       if (personId === undefined) throw new RangeError("A session belongs to a person.");
       const token = randomBytes(32).toString("base64url");
       const now = clock.now();
       await store.write(async (tx) => {
-        await tx.delete(sessions).where(lt(sessions.expiresAt, now - KEEP_ENDED_MS));
-        await tx.insert(sessions).values({
+        await deleteSessionsEndedBefore(tx, now - KEEP_ENDED_MS);
+        await insertSession(tx, {
           id: hashToken(token),
           personId,
-          labId: labId ?? null,
+          labId,
           createdAt: now,
           lastSeenAt: now,
           expiresAt: now + ABSOLUTE_MS,
         });
-        await recordSessionEvent(tx, now, "person.signed_in", personId, labId ?? null);
+        await recordSessionEvent(tx, now, "person.signed_in", { personId, labId });
       });
       return token;
     },
     readData: async (token) => {
+      const id = hashToken(token);
       const now = clock.now();
-      const [row] = await store.db
-        .select()
-        .from(sessions)
-        .where(and(eq(sessions.id, hashToken(token)), isNull(sessions.revokedAt)))
-        .limit(1);
-      if (row === undefined || row.personId === null) return null;
-      if (now >= row.expiresAt || now >= row.lastSeenAt + IDLE_MS) return null;
-      if (now >= row.lastSeenAt + NOTE_USE_EVERY_MS) {
-        await store.write((tx) =>
-          tx.update(sessions).set({ lastSeenAt: now }).where(eq(sessions.id, row.id)),
-        );
+      const session = await findOpenSession(store.db, id, { now, usedAfter: now - IDLE_MS });
+      if (session === null) return null;
+      if (now >= session.lastSeenAt + NOTE_USE_EVERY_MS) {
+        await store.write((tx) => updateSessionUse(tx, id, now));
       }
-      return { personId: row.personId, labId: row.labId };
+      return { personId: session.personId, labId: session.labId };
     },
-    updateData: async (token, { labId }) => {
+    updateData: async (token, { labId = null }) => {
       await store.write(async (tx) => {
-        const [row] = await tx
-          .update(sessions)
-          .set({ labId: labId ?? null })
-          .where(and(eq(sessions.id, hashToken(token)), isNull(sessions.revokedAt)))
-          .returning({ personId: sessions.personId });
-        if (row?.personId) {
-          await recordSessionEvent(
-            tx,
-            clock.now(),
-            "person.lab_chosen",
-            row.personId,
-            labId ?? null,
-          );
+        const session = await updateSessionLab(tx, hashToken(token), labId);
+        if (session !== null) {
+          await recordSessionEvent(tx, clock.now(), "person.lab_chosen", session);
         }
       });
     },
     deleteData: async (token) => {
       await store.write(async (tx) => {
         const now = clock.now();
-        const [row] = await tx
-          .update(sessions)
-          .set({ revokedAt: now })
-          .where(and(eq(sessions.id, hashToken(token)), isNull(sessions.revokedAt)))
-          .returning({ personId: sessions.personId, labId: sessions.labId });
-        if (row?.personId) {
-          await recordSessionEvent(tx, now, "person.signed_out", row.personId, row.labId);
-        }
+        const session = await revokeSession(tx, hashToken(token), now);
+        if (session !== null) await recordSessionEvent(tx, now, "person.signed_out", session);
       });
     },
   });
@@ -120,19 +104,17 @@ export function openSessions(
 
 /** Who holds the request's cookie, or null where it opens no session. */
 export async function findVisitor(
-  desk: Pick<Desk, "store">,
-  sessionStorage: Sessions,
+  store: Store,
+  sessions: Sessions,
   request: Request,
 ): Promise<Visitor | null> {
-  const session = await sessionStorage.getSession(request.headers.get("Cookie"));
+  const session = await sessions.getSession(request.headers.get("Cookie"));
   const personId = session.get("personId");
   if (personId === undefined) return null;
-  const [person] = await desk.store.db
-    .select({ id: people.id, name: people.name, email: people.email })
-    .from(people)
-    .where(eq(people.id, personId))
-    .limit(1);
-  return person === undefined ? null : { person, labId: session.get("labId") ?? null };
+  const row = await findPerson(store.db, personId);
+  if (row === null) return null;
+  const person = { id: row.id, name: row.name, email: row.email };
+  return { person, labId: session.get("labId") ?? null };
 }
 
 function hashToken(token: string): string {
@@ -143,8 +125,7 @@ function recordSessionEvent(
   tx: Transaction,
   at: number,
   kind: string,
-  personId: string,
-  labId: string | null,
+  { personId, labId }: SessionContent,
 ): Promise<void> {
   return recordEvent(tx, { at, labId, personId, kind, objectType: "person", objectId: personId });
 }

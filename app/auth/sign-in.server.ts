@@ -1,10 +1,11 @@
 import { createHmac, randomBytes } from "node:crypto";
 import { Authenticator } from "remix-auth";
 import { FormStrategy } from "remix-auth-form";
+import type { Store } from "#app/db/client.server.ts";
 import { recordEvent } from "#app/db/events.server.ts";
 import { findPersonByEmail, listMemberships } from "#app/db/people.server.ts";
 import { emailSchema } from "#app/domain/person.ts";
-import type { Desk } from "./context.server.ts";
+import type { Clock } from "#app/services/clock.server.ts";
 import { hashPassword, verifyPassword } from "./password.server.ts";
 import type { SessionContent } from "./session.server.ts";
 import { openSignInLimits } from "./sign-in-limits.server.ts";
@@ -51,10 +52,9 @@ export type SignIn = (request: Request, remoteAddress: string) => Promise<Signed
  * @param secret  keys the hash that stands for an unknown address in the events
  */
 export async function openSignIn(
-  desk: Pick<Desk, "store" | "clock">,
+  { store, clock }: { store: Store; clock: Clock },
   secret: string,
 ): Promise<SignIn> {
-  const { store, clock } = desk;
   const limits = openSignInLimits();
   const nobodysHash = await hashPassword(randomBytes(32).toString("base64url"));
 

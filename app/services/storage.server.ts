@@ -1,3 +1,19 @@
+import {
+  CompleteMultipartUploadCommand,
+  CopyObjectCommand,
+  CreateMultipartUploadCommand,
+  DeleteObjectCommand,
+  GetObjectCommand,
+  HeadBucketCommand,
+  HeadObjectCommand,
+  PutObjectCommand,
+  S3Client,
+  S3ServiceException,
+  UploadPartCommand,
+} from "@aws-sdk/client-s3";
+import { getSignedUrl } from "@aws-sdk/s3-request-presigner";
+import type { StorageEnv } from "#app/env.server.ts";
+
 /** Raw files in S3-compatible storage. */
 export interface Storage {
   /** Presigned address for one PUT of one part, 10 minutes. Only below `incoming/`. */
@@ -18,4 +34,97 @@ export interface Storage {
   delete(key: string): Promise<void>;
   /** Whether the bucket answers. */
   ready(): Promise<boolean>;
+}
+
+const PRESIGNED_S = 600;
+const READY_TIMEOUT_MS = 2000;
+
+export function createStorage(env: StorageEnv): Storage {
+  const Bucket = env.bucket;
+  const client = new S3Client({
+    endpoint: env.endpoint,
+    region: env.region,
+    credentials: { accessKeyId: env.accessKeyId, secretAccessKey: env.secretAccessKey },
+    forcePathStyle: true,
+    // The defaults put checksums into presigned addresses and into streams; not every storage that
+    // speaks S3 knows them, and some keep them as part of the object. We hash what arrives ourselves.
+    requestChecksumCalculation: "WHEN_REQUIRED",
+    responseChecksumValidation: "WHEN_REQUIRED",
+  });
+
+  async function get(key: string) {
+    const { Body, ContentLength } = await client.send(new GetObjectCommand({ Bucket, Key: key }));
+    if (Body === undefined) throw new Error(`The storage answered without the object ${key}.`);
+    return { body: Body, sizeBytes: ContentLength ?? 0 };
+  }
+
+  return {
+    presignPart: async (key, multipartId, part) => {
+      // What was taken in is never at an address that a browser can write to.
+      if (!key.startsWith("incoming/")) throw new RangeError(`${key} is never presigned.`);
+      const command = new UploadPartCommand({
+        Bucket,
+        Key: key,
+        UploadId: multipartId,
+        PartNumber: part,
+      });
+      return getSignedUrl(client, command, { expiresIn: PRESIGNED_S });
+    },
+    startMultipart: async (key) => {
+      const { UploadId } = await client.send(
+        new CreateMultipartUploadCommand({ Bucket, Key: key }),
+      );
+      if (UploadId === undefined) throw new Error(`The storage opened no upload for ${key}.`);
+      return UploadId;
+    },
+    finishMultipart: async (key, multipartId, parts) => {
+      const Parts = parts
+        .toSorted((a, b) => a.number - b.number)
+        .map(({ number, etag }) => ({ PartNumber: number, ETag: etag }));
+      await client.send(
+        new CompleteMultipartUploadCommand({
+          Bucket,
+          Key: key,
+          UploadId: multipartId,
+          MultipartUpload: { Parts },
+        }),
+      );
+    },
+    put: async (key, bytes) => {
+      await client.send(new PutObjectCommand({ Bucket, Key: key, Body: bytes }));
+    },
+    copy: async (from, to) => {
+      const source = `${Bucket}/${from.split("/").map(encodeURIComponent).join("/")}`;
+      await client.send(new CopyObjectCommand({ Bucket, Key: to, CopySource: source }));
+    },
+    size: async (key) => {
+      try {
+        const head = await client.send(new HeadObjectCommand({ Bucket, Key: key }));
+        return head.ContentLength ?? 0;
+      } catch (error) {
+        if (error instanceof S3ServiceException && error.$metadata.httpStatusCode === 404) {
+          return null;
+        }
+        throw error;
+      }
+    },
+    read: async (key) => (await get(key)).body.transformToByteArray(),
+    stream: async (key) => {
+      const { body, sizeBytes } = await get(key);
+      return { body: body.transformToWebStream(), sizeBytes };
+    },
+    delete: async (key) => {
+      await client.send(new DeleteObjectCommand({ Bucket, Key: key }));
+    },
+    ready: async () => {
+      try {
+        await client.send(new HeadBucketCommand({ Bucket }), {
+          abortSignal: AbortSignal.timeout(READY_TIMEOUT_MS),
+        });
+        return true;
+      } catch {
+        return false;
+      }
+    },
+  };
 }
