@@ -15,7 +15,11 @@ export function wordsOfError(error: unknown): ErrorWords {
       text: "Something went wrong on our side; nothing that you saved is lost. Load the page again. If it happens again, tell whoever runs Ogee in your lab what you did.",
     };
   }
-  const said = typeof error.data === "string" && error.data.length > 0 ? error.data : null;
+  // The router's own 404 speaks of routes.
+  const said =
+    typeof error.data === "string" && error.data.length > 0 && !error.data.startsWith("Error:")
+      ? error.data
+      : null;
   switch (error.status) {
     case 400:
       return {
@@ -32,7 +36,7 @@ export function wordsOfError(error: unknown): ErrorWords {
     case 404:
       return {
         title: "Nothing stands here",
-        text: "There is no such page, or it belongs to a lab that you are not in. Check the address, or begin at your own page.",
+        text: `${said ?? "There is nothing at this address, or it belongs to another lab."} Check the address, or begin at your own page.`,
       };
     case 409:
       return {

@@ -34,6 +34,8 @@ export interface StudySummary {
   rigName: string | null;
   participants: number;
   conditions: number;
+  protocols: number;
+  /** Those whose stored file is verified. */
   recordings: number;
   /** Current fits in each state; recordings without a fit are the rest. */
   fits: { draft: number; submitted: number; returned: number; approved: number };
@@ -54,7 +56,7 @@ export async function listStudies(db: Reader, labId: string): Promise<StudySumma
     .where(eq(studies.labId, labId))
     .orderBy(sql`${studies.createdAt} desc`, asc(studies.name));
   const ids = rows.map((row) => row.id);
-  const [people, kinds, files, current] = await Promise.all([
+  const [people, kinds, versions, files, current] = await Promise.all([
     db
       .select({ studyId: participants.studyId, n: count() })
       .from(participants)
@@ -65,6 +67,11 @@ export async function listStudies(db: Reader, labId: string): Promise<StudySumma
       .from(conditions)
       .where(inArray(conditions.studyId, ids))
       .groupBy(conditions.studyId),
+    db
+      .select({ studyId: protocols.studyId, n: count() })
+      .from(protocols)
+      .where(inArray(protocols.studyId, ids))
+      .groupBy(protocols.studyId),
     db
       .select({ studyId: recordings.studyId, n: count() })
       .from(recordings)
@@ -89,6 +96,7 @@ export async function listStudies(db: Reader, labId: string): Promise<StudySumma
       ...row,
       participants: of(people, row.id),
       conditions: of(kinds, row.id),
+      protocols: of(versions, row.id),
       recordings: of(files, row.id),
       fits: {
         draft: fitsIn("draft"),
@@ -173,13 +181,24 @@ export function listPostures(db: Reader, studyId: string): Promise<PostureRow[]>
     .orderBy(asc(postures.position));
 }
 
-/** How many protocol versions a study has. */
-export async function countProtocols(db: Reader, studyId: string): Promise<number> {
-  const [row] = await db
-    .select({ n: count() })
-    .from(protocols)
-    .where(eq(protocols.studyId, studyId));
-  return row?.n ?? 0;
+/** The study that an object of this lab belongs to, or null: so that a page knows its place. */
+export async function findStudyIdOf(
+  db: Reader,
+  labId: string,
+  object: { type: "recording" | "fit"; id: string },
+): Promise<string | null> {
+  const [row] =
+    object.type === "recording"
+      ? await db
+          .select({ studyId: recordings.studyId })
+          .from(recordings)
+          .where(and(eq(recordings.id, object.id), eq(recordings.labId, labId)))
+      : await db
+          .select({ studyId: recordings.studyId })
+          .from(fits)
+          .innerJoin(recordings, eq(recordings.id, fits.recordingId))
+          .where(and(eq(fits.id, object.id), eq(fits.labId, labId)));
+  return row?.studyId ?? null;
 }
 
 // ---------------------------------------------------------------- writing
