@@ -30,7 +30,9 @@ export function butterworthLowpass(order: number, cutoffHz: number, rateHz: numb
     const norm = 1 + q * w + w * w;
     const a1 = (2 * (w - 1) * (w + 1)) / norm;
     const a2 = (1 - q * w + w * w) / norm;
-    const b = (w * w) / norm;
+    // w² / norm, but with the gain at 0 Hz exactly 1 for a1 and a2 as they are rounded: where the
+    // cut-off is far below the rate, 1 + a1 + a2 is small and this keeps one more digit.
+    const b = (1 + a1 + a2) / 4;
     sections.push({ b0: b, b1: 2 * b, b2: b, a1, a2 });
   }
   return sections;

@@ -34,6 +34,9 @@ export function nonnegativeLeastSquares(
   if (free.status === "singular") return free;
   const n = columns.length;
   const { scaledR, norms, qty, conditionNumber } = free;
+  if (free.coefficients.every((b) => b > 0)) {
+    return { status: "solved", coefficients: free.coefficients, bound: [], conditionNumber };
+  }
   const unitColumns: Float64Array[] = [];
   for (let j = 0; j < n; j++) {
     const column = new Float64Array(n);
@@ -76,11 +79,10 @@ export function nonnegativeLeastSquares(
 export function nonnegativeFromNormalEquations(equations: NormalEquations): Float64Array | null {
   const { gram, moment } = equations;
   const n = moment.length;
+  const free = solveGram(gram, moment);
+  if (free === null || free.every((b) => b > 0)) return free;
   const norms = new Float64Array(n);
-  for (let j = 0; j < n; j++) {
-    norms[j] = Math.sqrt(gram[j * n + j] as number);
-    if (!((norms[j] as number) > 0)) return null;
-  }
+  for (let j = 0; j < n; j++) norms[j] = Math.sqrt(gram[j * n + j] as number);
   const active = activeSet(
     n,
     Math.sqrt(equations.square),

@@ -1,0 +1,54 @@
+import { describe, expect, it } from "vitest";
+import { readFixture } from "../../../tests/support/read-fixture.ts";
+import { leastSquares } from "./least-squares.ts";
+import {
+  addNormalEquations,
+  clearNormalEquations,
+  emptyNormalEquations,
+  normalEquations,
+  solveNormalEquations,
+} from "./normal-equations.ts";
+
+const { nnls } = readFixture<{ nnls: { A: number[][]; b: number[] }[] }>(
+  "nonnegative-least-squares",
+  "scipy.json",
+);
+const ramp = nnls[0] ?? { A: [], b: [] };
+const columns = [0, 1, 2].map((j) => Float64Array.from(ramp.A, (row) => row[j] ?? Number.NaN));
+const y = Float64Array.from(ramp.b);
+
+describe("normal equations", () => {
+  it("give the QR's coefficients to 1e-11 on a ramp's columns (condition 2.4)", () => {
+    const qr = leastSquares(columns, y);
+    const coefficients = solveNormalEquations(normalEquations(columns, y));
+    if (qr.status !== "solved" || coefficients === null) throw new Error("not solved");
+    coefficients.forEach((value, j) => {
+      expect(value / (qr.coefficients[j] ?? Number.NaN)).toBeCloseTo(1, 11);
+    });
+  });
+
+  it("of two windows add up to those of their stack", () => {
+    const sum = emptyNormalEquations(3);
+    addNormalEquations(sum, normalEquations(columns, y, 0, 25));
+    addNormalEquations(sum, normalEquations(columns, y, 25, 60));
+    const whole = normalEquations(columns, y);
+    expect(sum.rows).toBe(60);
+    expect(sum.square / whole.square).toBeCloseTo(1, 14);
+    sum.gram.forEach((value, k) => {
+      expect(value).toBeCloseTo(whole.gram[k] ?? Number.NaN, 9);
+    });
+    const [fromSum, fromWhole] = [sum, whole].map(solveNormalEquations);
+    fromSum?.forEach((value, j) => {
+      expect(value).toBeCloseTo(fromWhole?.[j] ?? Number.NaN, 11);
+    });
+    clearNormalEquations(sum);
+    expect(sum).toEqual(emptyNormalEquations(3));
+  });
+
+  it("are not solved where the columns depend on each other or one is 0", () => {
+    const x = Float64Array.of(1, 2, 3);
+    expect(solveNormalEquations(normalEquations([x, x.map((v) => 2 * v)], x))).toBeNull();
+    expect(solveNormalEquations(normalEquations([new Float64Array(3)], x))).toBeNull();
+    expect(solveNormalEquations(emptyNormalEquations(2))).toBeNull();
+  });
+});
