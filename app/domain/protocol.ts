@@ -5,6 +5,7 @@
 import { z } from "zod";
 import type { FilterProtocol, Impedance, Protocol, Term } from "#app/engine/types.ts";
 import { canonicalJson } from "./canonical-json.ts";
+import { type FieldProblem, oneOf, problemsOf, shownValue } from "./field-problem.ts";
 import type { RecordingMap } from "./recording.ts";
 import { parseStrictJson, StrictJsonError, shown } from "./strict-json.ts";
 
@@ -417,7 +418,7 @@ export function parseProtocol(text: string): Protocol {
   }
   const read = protocolSchema.safeParse(document);
   if (read.success) return { ...read.data, rig: rigOfEachAxis(read.data) };
-  const [first] = problemsOf(read.error, document);
+  const [first] = problemsIn(read.error, document);
   throw new ProtocolError(first?.field ?? null, first?.sentence ?? "The protocol cannot be read.");
 }
 
@@ -444,13 +445,6 @@ function refuseHiddenKeys(value: unknown, path: (string | number)[]): void {
   }
 }
 
-/** One problem of a document, for a screen or the command line. */
-export interface FieldProblem {
-  /** Dotted. */
-  field: string;
-  sentence: string;
-}
-
 /** Checks choices as typed into a form; all problems at once, so that each can stand by its field. */
 export function readProtocolChoices(
   value: unknown,
@@ -458,114 +452,20 @@ export function readProtocolChoices(
   const read = protocolChoicesSchema.safeParse(value);
   return read.success
     ? { status: "valid", choices: read.data }
-    : { status: "invalid", problems: problemsOf(read.error, value) };
+    : { status: "invalid", problems: problemsIn(read.error, value) };
 }
 
 export const defaultChoices: ProtocolChoices = protocolChoicesSchema.parse({});
 
-type Issue = z.core.$ZodIssue;
-
-function problemsOf(error: z.ZodError, document: unknown): FieldProblem[] {
-  return error.issues.map((issue) => problemOf(issue, [], document));
+function problemsIn(error: z.ZodError, document: unknown): FieldProblem[] {
+  return problemsOf(error, document, unknownKey);
 }
 
-function problemOf(issue: Issue, parent: PropertyKey[], document: unknown): FieldProblem {
-  const path = [...parent, ...issue.path];
-  const field = path.map(String).join(".");
-  const value = valueAt(document, path);
-  if (issue.code === "unrecognized_keys") {
-    const key = issue.keys[0] ?? "";
-    return { field: [...path, key].map(String).join("."), sentence: unknownKey(path, key) };
-  }
-  if (issue.code === "invalid_union") {
-    const branch = likeliestBranch(issue.errors);
-    if (branch !== undefined) return problemOf(branch, path, document);
-  }
-  if (value === undefined && issue.code !== "custom") {
-    return { field, sentence: "This field is missing; it is required." };
-  }
-  return { field, sentence: sentenceFor(issue, value) };
-}
-
-/** Of a union's branches the one that was most likely meant: it got furthest into the value. */
-function likeliestBranch(branches: Issue[][]): Issue | undefined {
-  const depth = (branch: Issue[]) => Math.max(...branch.map((issue) => issue.path.length));
-  const sorted = branches
-    .filter((branch) => branch.length > 0)
-    .sort((a, b) => depth(b) - depth(a) || a.length - b.length);
-  return sorted[0]?.[0];
-}
-
-function unknownKey(path: PropertyKey[], key: string): string {
+function unknownKey(path: PropertyKey[], key: string): string | null {
   const place = [...path.filter((part) => typeof part === "string"), key].map(String).join(".");
   const kind = Object.hasOwn(KEYS_OF_OTHER_KINDS, place) ? KEYS_OF_OTHER_KINDS[place] : undefined;
-  return kind === undefined
-    ? `${shown(key)} is not a key of a protocol; remove it or correct its spelling.`
-    : `${shown(key)} belongs to the kind "${kind}"; remove it from a protocol for "transient".`;
-}
-
-function sentenceFor(issue: Issue, value: unknown): string {
-  switch (issue.code) {
-    case "custom":
-      return issue.message;
-    case "invalid_type":
-      return `${shownValue(value)} is not ${TYPE_WORDS[issue.expected] ?? "what is asked for here"}.`;
-    case "invalid_value":
-      return issue.message.startsWith("Invalid")
-        ? `${shownValue(value)} is not known here; use ${oneOf(issue.values)}.`
-        : issue.message;
-    case "too_small":
-      if (issue.origin === "array") return `At least ${counted(issue.minimum)} needed here.`;
-      if (issue.origin === "string") return issue.message;
-      return issue.inclusive
-        ? `${shownValue(value)} is too small; the least is ${issue.minimum}.`
-        : `${shownValue(value)} is too small; it must be over ${issue.minimum}.`;
-    case "too_big":
-      if (issue.origin === "array") return `At most ${issue.maximum} entries may stand here.`;
-      return `${shownValue(value)} is too large; the most is ${issue.maximum}.`;
-    default:
-      return `${shownValue(value)} does not fit here.`;
-  }
-}
-
-const TYPE_WORDS: Record<string, string> = {
-  number: "a number",
-  int: "a whole number",
-  string: "a text in quotes",
-  boolean: "true or false",
-  object: "an object in { braces }",
-  record: "an object in { braces }",
-  array: "a list in [ brackets ]",
-  tuple: "a list in [ brackets ]",
-};
-
-function counted(count: number | bigint): string {
-  return count === 1 ? "one entry is" : `${count} entries are`;
-}
-
-function oneOf(values: readonly unknown[]): string {
-  const words = values.map((value) => (typeof value === "string" ? value : String(value)));
-  const shownWords = words.map((each) => (/^\S+$/.test(each) && each !== "," ? each : shown(each)));
-  return shownWords.length < 2
-    ? shownWords.join("")
-    : `${shownWords.slice(0, -1).join(", ")} or ${shownWords.at(-1)}`;
-}
-
-/** A value as it stands in the document, shortened. */
-function shownValue(value: unknown): string {
-  if (typeof value === "string") return shown(value);
-  if (Array.isArray(value)) return "A list";
-  if (typeof value === "object" && value !== null) return "An object";
-  return String(value);
-}
-
-function valueAt(document: unknown, path: PropertyKey[]): unknown {
-  let value = document;
-  for (const key of path) {
-    if (typeof value !== "object" || value === null || !Object.hasOwn(value, key)) return undefined;
-    value = (value as Record<PropertyKey, unknown>)[key];
-  }
-  return value;
+  if (kind === undefined) return null;
+  return `${shown(key)} belongs to the kind "${kind}"; remove it from a protocol for "transient".`;
 }
 
 // ---------------------------------------------------------------- compiling
