@@ -163,6 +163,23 @@ export const placeColumns = {
   day: visits.day,
 };
 
+export async function findRecordingPlace(
+  db: Reader,
+  labId: string,
+  recordingId: string,
+): Promise<RecordingPlace | null> {
+  const [row] = await db
+    .select(placeColumns)
+    .from(recordings)
+    .innerJoin(studies, eq(studies.id, recordings.studyId))
+    .innerJoin(participants, eq(participants.id, recordings.participantId))
+    .innerJoin(conditions, eq(conditions.id, recordings.conditionId))
+    .innerJoin(postures, eq(postures.id, recordings.postureId))
+    .innerJoin(visits, eq(visits.id, recordings.visitId))
+    .where(and(eq(recordings.id, recordingId), eq(recordings.labId, labId)));
+  return row ?? null;
+}
+
 export interface ListedRecording extends RecordingPlace {
   state: RecordingState;
   refusal: string | null;

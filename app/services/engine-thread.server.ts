@@ -27,7 +27,7 @@ export interface EngineThread {
     protocol: Protocol,
     fit: { file: string; sha256: string; protocolSha256: string; windows: WindowsDocument },
   ): Promise<{ status: "analyzed"; result: Result } | EngineRefusal>;
-  /** Ends the thread; what is under way is rejected. */
+  /** Ends the thread; what is under way or comes later is rejected. */
   close(): Promise<void>;
 }
 
@@ -39,6 +39,7 @@ type Outcome =
 export function createEngineThread(): EngineThread {
   let worker: Worker | null = null;
   let lastId = 0;
+  let isClosed = false;
   const waiting = new Map<
     number,
     { resolve: (outcome: Outcome) => void; reject: (error: Error) => void }
@@ -65,6 +66,7 @@ export function createEngineThread(): EngineThread {
   }
 
   function call(bytes: Uint8Array<ArrayBuffer>, task: object): Promise<Outcome> {
+    if (isClosed) return Promise.reject(new Error("The engine's thread is closed."));
     worker ??= start();
     const thread = worker;
     lastId += 1;
@@ -89,9 +91,8 @@ export function createEngineThread(): EngineThread {
       return outcome;
     },
     close: async () => {
-      const open = worker;
-      worker = null;
-      await open?.terminate();
+      isClosed = true;
+      await worker?.terminate();
     },
   };
 }
