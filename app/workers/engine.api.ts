@@ -113,4 +113,5 @@ export type EngineProblemCode =
   | "missing"
   | "signed_out"
   | "changed"
-  | "stopped";
+  | "stopped"
+  | "closed";

@@ -72,7 +72,7 @@ export class EngineClient {
   close(): void {
     for (const seat of [this.#drawing, this.#pooling]) {
       seat?.worker.terminate();
-      seat?.fail(problem("stopped", "The recording was closed."));
+      seat?.fail(problem("closed", "The recording was closed."));
     }
   }
 

@@ -22,6 +22,7 @@ const CODES: readonly EngineProblemCode[] = [
   "signed_out",
   "changed",
   "stopped",
+  "closed",
 ];
 
 /** What a worker's error says; an error without a known code is one of the engine itself. */
