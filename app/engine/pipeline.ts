@@ -1,4 +1,26 @@
+import { EngineError, flag } from "#app/engine/errors.ts";
+import { impedanceModel, SAMPLES_PER_TERM } from "#app/engine/fit/fit-model.ts";
+import type { Analysed } from "#app/engine/pipeline-pool.ts";
+import { poolAll, poolingOf } from "#app/engine/pipeline-pool.ts";
+import type { AxisRig } from "#app/engine/pipeline-rig.ts";
+import { fitRig, rigProtocol } from "#app/engine/pipeline-rig.ts";
+import type { Place, RecordingInput } from "#app/engine/pipeline-window.ts";
+import {
+  benchOf,
+  chosenPlaces,
+  emgBaselines,
+  examine,
+  foundPlaces,
+  isKept,
+  markRaised,
+  placesOf,
+  resultWindow,
+  rigOf,
+  traceOf,
+} from "#app/engine/pipeline-window.ts";
+import { prepareAxis } from "#app/engine/prepare/prepare-axis.ts";
 import type {
+  Impedance,
   Prepared,
   Protocol,
   Result,
@@ -6,43 +28,196 @@ import type {
   WindowChoice,
   WindowsDocument,
   WindowView,
-} from "./types.ts";
+} from "#app/engine/types.ts";
+import { windowSpan } from "#app/engine/windows/window-span.ts";
+
+export type { RecordingInput } from "#app/engine/pipeline-window.ts";
 
 /** Name and version that every result carries; the version changes whenever a number may. */
 export const ENGINE = "ogee-engine 1.0.0";
 
-export interface RecordingInput {
-  /** As given by the caller; stands in the result. */
-  file: string;
-  sha256: string;
-  signals: Signals;
-}
-
 /** Bytes → Signals. @throws EngineError */
 export declare function readRecording(bytes: Uint8Array, protocol: Protocol): Signals;
 
-/** Signals → filtered, differentiated columns. @throws EngineError where a cut-off does not suit the rate */
-export declare function prepare(signals: Signals, protocol: Protocol): Prepared;
+/**
+ * Signals → filtered, differentiated columns.
+ *
+ * @throws EngineError "protocol" where a cut-off, a window or a baseline does not suit the rate
+ */
+export function prepare(signals: Signals, protocol: Protocol): Prepared {
+  checkSpans(protocol, signals.rateHz);
+  return { signals, axes: signals.axes.map((axis) => prepareAxis(signals, axis, protocol)) };
+}
 
 /** Every perturbation that is found, also those that are excluded, by axis in protocol order, then onset. */
-export declare function findWindows(prepared: Prepared, protocol: Protocol): WindowChoice[];
+export function findWindows(prepared: Prepared, protocol: Protocol): WindowChoice[] {
+  return protocol.axes.flatMap((_, index) => {
+    const bench = benchOf(prepared, protocol, index, rigOf(protocol, index));
+    return foundPlaces(bench).map((place) => {
+      const { fit, reason } = examine(bench, place);
+      return {
+        axis: bench.axis.name,
+        onset_s: bench.signals.timeS[place.onset] as number,
+        window_ms: [...place.windowMs],
+        included: fit !== null,
+        reason,
+      };
+    });
+  });
+}
 
-/** One window's fit with its traces: the call that follows a drag. `choices` are all windows of the axis (overlap). */
-export declare function viewWindow(
+/**
+ * One window's fit with its traces: the call that follows a drag. Its numbers are those of
+ * {@link analyze} for a recording on its own.
+ *
+ * @param choices  all windows of the axis: the next one's onset bounds this one, and their EMG is
+ *   what its own is raised against
+ */
+export function viewWindow(
   prepared: Prepared,
   protocol: Protocol,
   choice: WindowChoice,
   choices: WindowChoice[],
-): WindowView;
+): WindowView {
+  const index = protocol.axes.findIndex(({ name }) => name === choice.axis);
+  if (index < 0) throw new RangeError(`The protocol has no axis ${choice.axis}.`);
+  const bench = benchOf(prepared, protocol, index, rigOf(protocol, index));
+  const others = choices.filter(
+    ({ axis, onset_s }) => axis === choice.axis && onset_s !== choice.onset_s,
+  );
+  const [place, ...otherPlaces] = chosenPlaces(bench, [choice, ...others]) as [Place, ...Place[]];
+  const examined = examine(bench, place);
+  const window = resultWindow(bench, examined, 0);
+  if (window.emg.length > 0) {
+    const kept = otherPlaces.filter((other) => isKept(bench, other));
+    if (window.included) kept.push(place);
+    markRaised(
+      [window],
+      kept.map((each) => emgBaselines(bench, each)),
+    );
+  }
+  return { window, trace: traceOf(bench, examined) };
+}
 
 /**
  * The whole analysis: the one call of the browser's worker, the headless command and the server's
  * second look. Windows that `windows` names for a recording replace the finding of onsets there.
+ *
+ * @throws EngineError "protocol" where the protocol or `windows` does not suit a recording
  */
-export declare function analyze(input: {
+export function analyze(input: {
   protocol: Protocol;
   protocolSha256: string;
   recordings: RecordingInput[];
   rig: RecordingInput[];
   windows: WindowsDocument | null;
-}): Result;
+}): Result {
+  const { protocol, recordings, windows } = input;
+  checkAxes(protocol, windows);
+  const rigs = rigsOf(protocol, input.rig, windows);
+  const analysed = recordings.flatMap((recording, index) =>
+    analyseRecording(protocol, recording, index, rigs, windows),
+  );
+  for (const { name } of protocol.axes) {
+    const ofAxis = analysed.map(({ window }) => window).filter(({ axis }) => axis === name);
+    markRaised(
+      ofAxis,
+      ofAxis
+        .filter(({ included }) => included)
+        .map(({ emg }) => emg.map(({ baseline }) => baseline)),
+    );
+  }
+  return {
+    result_version: 1,
+    engine: ENGINE,
+    protocol_sha256: input.protocolSha256,
+    recordings: recordings.map(({ file, sha256, signals }, index) => ({
+      file,
+      sha256,
+      samples: signals.samples,
+      rate_hz: signals.rateHz,
+      duration_s: signals.durationS,
+      gaps: signals.gaps,
+      duplicates: signals.duplicates,
+      missing: signals.missing,
+      flags: analysed.some(({ window }) => window.recording === index)
+        ? signals.flags
+        : [...signals.flags, flag("no_perturbation")],
+    })),
+    rig: Object.fromEntries(
+      protocol.axes.map(({ name }, index) => [name, (rigs[index] as AxisRig).rig]),
+    ),
+    windows: analysed.map(({ window }) => window),
+    pooled: poolAll(protocol, recordings, rigs, analysed),
+  };
+}
+
+/** All windows of one recording, by axis in protocol order, then onset. */
+function analyseRecording(
+  protocol: Protocol,
+  { sha256, signals }: RecordingInput,
+  recording: number,
+  rigs: readonly { rig: Impedance }[],
+  windows: WindowsDocument | null,
+): Analysed[] {
+  const prepared = prepare(signals, protocol);
+  return protocol.axes.flatMap((_, index) => {
+    const bench = benchOf(prepared, protocol, index, (rigs[index] as { rig: Impedance }).rig);
+    return placesOf(bench, sha256, windows).map((place) => {
+      const examined = examine(bench, place);
+      return {
+        window: resultWindow(bench, examined, recording),
+        place,
+        rateHz: signals.rateHz,
+        pooling: poolingOf(bench, examined),
+      };
+    });
+  });
+}
+
+/** The rig of each axis: from its empty recordings, else as the protocol says. */
+function rigsOf(
+  protocol: Protocol,
+  empty: readonly RecordingInput[],
+  windows: WindowsDocument | null,
+): AxisRig[] {
+  const own = rigProtocol(protocol);
+  const nothing = own.axes.map(() => ({ rig: { K: 0, B: 0, I: 0 } }));
+  const analysed = empty.flatMap((recording, index) =>
+    analyseRecording(own, recording, index, nothing, windows),
+  );
+  return protocol.axes.map(({ name }, index) => {
+    const measured = fitRig(analysed.filter(({ window }) => window.axis === name));
+    if (measured !== null) return { rig: measured, measured: true };
+    const { K, B, I } = rigOf(protocol, index);
+    return { rig: { K, B, I, K_sd: null, B_sd: null, I_sd: null }, measured: false };
+  });
+}
+
+function checkSpans(protocol: Protocol, rateHz: number): void {
+  const span = windowSpan(0, protocol.window_ms, protocol.baseline_ms, rateHz);
+  const rate = `${Number(rateHz.toPrecision(6))} Hz`;
+  const free = impedanceModel(protocol.model).free.length;
+  const samples = span.end - span.start + 1;
+  if (samples < SAMPLES_PER_TERM * free) {
+    throw new EngineError(
+      "protocol",
+      `The window holds ${samples} samples at ${rate}, too few for ${free} free terms: lengthen it to at least ${SAMPLES_PER_TERM * free} samples.`,
+      { field: "window_ms" },
+    );
+  }
+  if (span.baselineEnd <= span.baselineStart) {
+    throw new EngineError("protocol", `The baseline holds no sample at ${rate}: lengthen it.`, {
+      field: "baseline_ms",
+    });
+  }
+}
+
+function checkAxes(protocol: Protocol, windows: WindowsDocument | null): void {
+  for (const [index, { axis }] of (windows?.windows ?? []).entries()) {
+    if (protocol.axes.some(({ name }) => name === axis)) continue;
+    throw new EngineError("protocol", `The protocol has no axis "${axis}", which a window names.`, {
+      field: `windows[${index}].axis`,
+    });
+  }
+}

@@ -1,0 +1,27 @@
+import { parabolaVertex } from "#app/engine/math/parabola.ts";
+
+/**
+ * Delay of the torque that is left in: the shift with the smallest residual, over all windows each
+ * fitted on its own, by a parabola through it and its neighbours.
+ *
+ * @param profiles  of each window, all as long: residual sum of squares by shift, middle entry 0
+ * @returns ms, positive where the torque is late; null at an end of the range or without profiles
+ */
+export function lagEstimateMs(profiles: readonly Float64Array[], rateHz: number): number | null {
+  const length = profiles[0]?.length ?? 0;
+  if (length < 3 || profiles.some((profile) => profile.length !== length)) return null;
+  const sums = new Float64Array(length);
+  for (const profile of profiles) {
+    for (let k = 0; k < length; k++) sums[k] = (sums[k] as number) + (profile[k] as number);
+  }
+  let best = 0;
+  for (let k = 1; k < length; k++) if ((sums[k] as number) < (sums[best] as number)) best = k;
+  if (best === 0 || best === length - 1) return null;
+  const vertex = parabolaVertex(
+    sums[best - 1] as number,
+    sums[best] as number,
+    sums[best + 1] as number,
+  );
+  if (vertex === null) return null;
+  return ((best + vertex.offset - (length - 1) / 2) * 1000) / rateHz;
+}
