@@ -1,4 +1,3 @@
-import { createHash } from "node:crypto";
 import { z } from "zod";
 import { type Transaction, violatedConstraint } from "#app/db/client.server.ts";
 import { recordEvent } from "#app/db/events.server.ts";
@@ -33,12 +32,13 @@ import {
   recordingMapSchema,
 } from "#app/domain/recording.ts";
 import { notFound } from "#app/domain/refusal.ts";
-import { type RigMap, rememberMap, rigMapSchema } from "#app/domain/rig-map.ts";
+import { rememberMap, rigMapSchema } from "#app/domain/rig-map.ts";
 import type { Actor } from "#app/domain/role.ts";
 import type { Protocol } from "#app/engine/types.ts";
 import { background } from "./background.server.ts";
 import type { Desk } from "./desk.server.ts";
 import { findKnownRecording, getOwnUpload, type KnownRecording } from "./open-upload.server.ts";
+import { readHashed } from "./read-hashed.server.ts";
 
 const DAY_MS = 24 * 60 * 60 * 1000;
 
@@ -429,7 +429,7 @@ async function checkCopy(
     refusal: `${row.fileName} was damaged on its way: what is stored is not what was chosen. Add the file again.`,
   } as const;
   if (size !== row.sizeBytes) return damaged;
-  const { bytes, sha256 } = await readHashed(desk, row);
+  const { bytes, sha256 } = await readHashed(desk.storage, row);
   if (sha256 !== row.sha256) return damaged;
   const outcome = await background.engine.readFacts(bytes, await protocolForReading(desk, row));
   if (outcome.status === "refused") {
@@ -437,23 +437,6 @@ async function checkCopy(
     return { state: "refused", refusal: `${row.fileName}${at}: ${outcome.sentence}` };
   }
   return { state: "ready", facts: canonicalJson(outcome.facts) };
-}
-
-/** Reads the stored file once: its bytes and the hash of what was read. */
-export async function readHashed(
-  desk: Desk,
-  row: Pick<RecordingRow, "storageKey" | "sizeBytes">,
-): Promise<{ bytes: Uint8Array<ArrayBuffer>; sha256: string }> {
-  const bytes = new Uint8Array(row.sizeBytes);
-  const hash = createHash("sha256");
-  let offset = 0;
-  const { body } = await desk.storage.stream(row.storageKey);
-  for await (const chunk of body) {
-    hash.update(chunk);
-    if (offset + chunk.length <= bytes.length) bytes.set(chunk, offset);
-    offset += chunk.length;
-  }
-  return { bytes, sha256: hash.digest("hex") };
 }
 
 /** A reader needs the map and little else; the study's newest choices say the rest. */
