@@ -3,7 +3,7 @@ import { existsSync } from "node:fs";
 import { dirname, join } from "node:path";
 import { fileURLToPath } from "node:url";
 import { createClient } from "@libsql/client";
-import { DrizzleQueryError } from "drizzle-orm";
+import { DrizzleQueryError, sql } from "drizzle-orm";
 import { drizzle, type LibSQLDatabase } from "drizzle-orm/libsql";
 import { migrate } from "drizzle-orm/libsql/migrator";
 import * as schema from "./schema.ts";
@@ -58,6 +58,16 @@ export async function openStore(url: string, options: StoreOptions = {}): Promis
   } catch (error) {
     client.close();
     throw error;
+  }
+}
+
+/** Whether the database can be read now. */
+export async function isAnswering(db: Database): Promise<boolean> {
+  try {
+    await db.run(sql`select 1 from labs limit 1`);
+    return true;
+  } catch {
+    return false;
   }
 }
 

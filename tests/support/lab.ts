@@ -1,7 +1,7 @@
 import { mkdtempSync, rmSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
-import type { Desk } from "#app/auth/context.server.ts";
+import type { Desk } from "#app/auth/desk.server.ts";
 import { openStore, type Store } from "#app/db/client.server.ts";
 import { labs, membershipRoles, memberships, people } from "#app/db/schema.ts";
 import { type Actor, ROLES, type Role } from "#app/domain/role.ts";

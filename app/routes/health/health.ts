@@ -1,3 +1,4 @@
+/** The process answers; whether it can work is for `/ready` to say. */
 export function loader() {
-  return new Response(null, { status: 404 });
+  return Response.json({ status: "alive" }, { headers: { "Cache-Control": "no-store" } });
 }

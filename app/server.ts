@@ -1,0 +1,189 @@
+import { randomBytes, randomUUID } from "node:crypto";
+import { join } from "node:path";
+import { createRequestHandler } from "@react-router/express";
+import compression from "compression";
+import express, { type ErrorRequestHandler, type RequestHandler } from "express";
+import { RouterContextProvider } from "react-router";
+import {
+  deskContext,
+  gateContext,
+  nonceContext,
+  remoteAddressContext,
+} from "#app/auth/context.server.ts";
+import { type Desk, openDesk, readSessionSecret } from "#app/auth/desk.server.ts";
+import { type Gate, openGate } from "#app/auth/gate.server.ts";
+import { type Env, readEnv } from "#app/env.server.ts";
+import { log } from "#app/services/log.server.ts";
+
+const env = readEnv(process.env);
+const CLIENT_FOLDER = join(import.meta.dirname, "..", "client");
+const YEAR_S = 31_536_000;
+
+/** Filled by `ready()`; nothing is served before. */
+let open: { desk: Desk; gate: Gate } | null = null;
+
+/** Opens the database (running the migrations) and what stands around it. */
+export async function ready(): Promise<void> {
+  if (env.isDemo) log.level = "warn";
+  const desk = await openDesk(env);
+  const gate = await openGate(desk, {
+    sessionSecret: readSessionSecret(env),
+    secureCookies: env.publicUrl.protocol === "https:",
+    isDemo: env.isDemo,
+  });
+  open = { desk, gate };
+}
+
+/** After the last answer: closes what `ready` opened. */
+export async function closing(): Promise<void> {
+  open?.desk.store.close();
+  open = null;
+}
+
+export const app = express();
+app.disable("x-powered-by");
+// Proxies on this machine or its private network say by which address and scheme they were asked.
+app.set("trust proxy", "loopback, linklocal, uniquelocal");
+
+app.use(logRequests());
+app.use(secureHeaders(env));
+// Text that is downloaded in bulk goes out faster as it is.
+app.use(
+  compression({
+    filter: (request, response) =>
+      !/^text\/csv/.test(String(response.getHeader("Content-Type"))) &&
+      compression.filter(request, response),
+  }),
+);
+// Built files carry a hash of their bytes in their names.
+app.use(
+  "/assets",
+  assetPolicy(env),
+  express.static(join(CLIENT_FOLDER, "assets"), {
+    immutable: true,
+    maxAge: YEAR_S * 1000,
+    fallthrough: false,
+  }),
+);
+app.use(express.static(CLIENT_FOLDER, { index: false, maxAge: "1h" }));
+app.use(refuseOtherSites(env));
+app.use(
+  createRequestHandler({
+    build: () => import("virtual:react-router/server-build"),
+    getLoadContext: (request, response) => {
+      if (open === null) throw new Error("The server is not ready.");
+      const context = new RouterContextProvider();
+      context.set(deskContext, open.desk);
+      context.set(gateContext, open.gate);
+      context.set(remoteAddressContext, request.ip ?? "unknown");
+      context.set(nonceContext, response.locals.nonce);
+      return context;
+    },
+  }),
+);
+app.use(sayFailure());
+
+/** The path without its query, which may hold what a person typed. */
+function logRequests(): RequestHandler {
+  return (request, response, next) => {
+    const startedMs = performance.now();
+    const id = randomUUID();
+    response.setHeader("X-Request-Id", id);
+    const { path, method } = request;
+    const isQuiet = path === "/health" || path === "/ready" || path.startsWith("/assets/");
+    response.once("close", () => {
+      if (isQuiet && response.statusCode < 400) return;
+      const ms = Math.round(performance.now() - startedMs);
+      log.info({ id, method, path, status: response.statusCode, ms }, "Answered");
+    });
+    next();
+  };
+}
+
+function secureHeaders({ publicUrl, storage }: Env): RequestHandler {
+  return (_request, response, next) => {
+    const nonce = randomBytes(16).toString("base64");
+    response.locals.nonce = nonce;
+    response.set({
+      "Content-Security-Policy": [
+        "default-src 'self'",
+        `script-src 'self' 'nonce-${nonce}'`,
+        "style-src 'self'",
+        // Places and sizes of marks are set as properties; no rule can come in by them.
+        "style-src-attr 'unsafe-inline'",
+        `connect-src 'self' ${storage.endpoint}`,
+        "img-src 'self' data: blob:",
+        "font-src 'self'",
+        "worker-src 'self'",
+        "object-src 'none'",
+        "base-uri 'none'",
+        "form-action 'self'",
+        "frame-ancestors 'none'",
+      ].join("; "),
+      "X-Content-Type-Options": "nosniff",
+      "Referrer-Policy": "same-origin",
+      "Cross-Origin-Opener-Policy": "same-origin",
+      "Cross-Origin-Resource-Policy": "same-origin",
+      "Permissions-Policy":
+        "camera=(), microphone=(), geolocation=(), payment=(), usb=(), serial=(), bluetooth=()",
+    });
+    if (publicUrl.protocol === "https:") {
+      response.setHeader("Strict-Transport-Security", `max-age=${YEAR_S}`);
+    }
+    next();
+  };
+}
+
+/** A worker obeys the policy that its own script came with; hashing there runs as WebAssembly. */
+function assetPolicy({ storage }: Env): RequestHandler {
+  const policy = [
+    "default-src 'none'",
+    "script-src 'self' 'wasm-unsafe-eval'",
+    `connect-src 'self' ${storage.endpoint}`,
+    "frame-ancestors 'none'",
+  ].join("; ");
+  return (_request, response, next) => {
+    response.setHeader("Content-Security-Policy", policy);
+    next();
+  };
+}
+
+/**
+ * What changes something must come from a page of ours. Browsers say so in Sec-Fetch-Site or, older
+ * ones, in Origin; what sends neither is no browser, and holds no cookie that it did not ask for.
+ */
+function refuseOtherSites({ publicUrl }: Env): RequestHandler {
+  return (request, response, next) => {
+    if (["GET", "HEAD", "OPTIONS"].includes(request.method)) return next();
+    const site = request.get("Sec-Fetch-Site");
+    const origin = request.get("Origin");
+    const here = [publicUrl.origin, `${request.protocol}://${request.get("Host")}`];
+    const isOurs =
+      site !== undefined
+        ? site === "same-origin" || site === "none"
+        : origin === undefined || here.includes(origin);
+    if (isOurs) return next();
+    response
+      .status(403)
+      .type("text/plain")
+      .send("This came from a page of another site. Open Ogee itself and try again there.");
+  };
+}
+
+/** What the router could not turn into a page. Four parameters make it express's error handler. */
+function sayFailure(): ErrorRequestHandler {
+  return (error, request, response, next) => {
+    const status = Number(error?.status ?? 500);
+    if (status >= 500)
+      log.error({ err: error, method: request.method, path: request.path }, "Failed");
+    if (response.headersSent) return next(error);
+    response
+      .status(status)
+      .type("text/plain")
+      .send(
+        status === 404
+          ? "There is nothing at this address."
+          : "Something went wrong on our side. Load the page again; if it happens again, tell whoever runs Ogee in your lab.",
+      );
+  };
+}
