@@ -1,6 +1,10 @@
 import { describe, expect, it } from "vitest";
+import {
+  butterworthBandpass,
+  butterworthLowpass,
+  type Section,
+} from "#app/engine/math/butterworth.ts";
 import { readFixture } from "../../../tests/support/read-fixture.ts";
-import { butterworthBandpass, butterworthLowpass, type Section } from "./butterworth.ts";
 
 interface Reference {
   cases: { fs: number; fc: number; order: number; b: number[]; a: number[]; sos: number[][] }[];

@@ -1,8 +1,8 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
+import { butterworthBandpass, butterworthLowpass } from "#app/engine/math/butterworth.ts";
+import { filterForward, filterZeroPhase, padSamples } from "#app/engine/math/filter.ts";
 import { readFixture } from "../../../tests/support/read-fixture.ts";
-import { butterworthBandpass, butterworthLowpass } from "./butterworth.ts";
-import { filterForward, filterZeroPhase, padSamples } from "./filter.ts";
 
 interface ExactCase {
   fs: number;

@@ -1,7 +1,7 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
+import { correlationOf, leastSquares, predict } from "#app/engine/math/least-squares.ts";
 import { readFixture } from "../../../tests/support/read-fixture.ts";
-import { correlationOf, leastSquares, predict } from "./least-squares.ts";
 
 interface StrdSet {
   name: string;

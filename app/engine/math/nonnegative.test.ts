@@ -1,9 +1,12 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
+import { leastSquares } from "#app/engine/math/least-squares.ts";
+import {
+  nonnegativeFromNormalEquations,
+  nonnegativeLeastSquares,
+} from "#app/engine/math/nonnegative.ts";
+import { normalEquations } from "#app/engine/math/normal-equations.ts";
 import { readFixture } from "../../../tests/support/read-fixture.ts";
-import { leastSquares } from "./least-squares.ts";
-import { nonnegativeFromNormalEquations, nonnegativeLeastSquares } from "./nonnegative.ts";
-import { normalEquations } from "./normal-equations.ts";
 
 const scipy = readFixture<{
   nnls: {

@@ -1,13 +1,13 @@
 import { describe, expect, it } from "vitest";
-import { readFixture } from "../../../tests/support/read-fixture.ts";
-import { leastSquares } from "./least-squares.ts";
+import { leastSquares } from "#app/engine/math/least-squares.ts";
 import {
   addNormalEquations,
   clearNormalEquations,
   emptyNormalEquations,
   normalEquations,
   solveNormalEquations,
-} from "./normal-equations.ts";
+} from "#app/engine/math/normal-equations.ts";
+import { readFixture } from "../../../tests/support/read-fixture.ts";
 
 const { nnls } = readFixture<{ nnls: { A: number[][]; b: number[] }[] }>(
   "nonnegative-least-squares",

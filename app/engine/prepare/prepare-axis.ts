@@ -26,13 +26,12 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
   const { rateHz } = signals;
   const limb = axis.limbAngle?.si ?? null;
   const recorded = [axis.angle.si, axis.torqueNm, ...(limb ? [limb] : [])];
-  const shifted = shiftEarlier(
-    axis.torqueNm,
-    breakAtMissing(signals.segments, recorded),
-    rateHz,
-    protocol.lag_ms,
-  );
-  const segments = breakAtMissing(signals.segments, [...recorded, shifted]).filter(
+  const whole = breakAtMissing(signals.segments, recorded);
+  const torqueNm =
+    protocol.lag_ms === 0
+      ? axis.torqueNm
+      : shiftEarlier(axis.torqueNm, whole, rateHz, protocol.lag_ms);
+  const segments = breakAtMissing(whole, [torqueNm]).filter(
     ({ start, end }) => end - start >= SHORTEST_SEGMENT_SAMPLES,
   );
 
@@ -58,7 +57,7 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
     angleRad,
     velocityRadPerS: bySegment(angleRad, segments, first),
     accelerationRadPerS2: bySegment(angleRad, segments, (part) => fivePointSecond(part, stepS)),
-    torqueNm: condition(shifted),
+    torqueNm: condition(torqueNm),
     onsetAngleRad,
     onsetVelocityRadPerS: bySegment(onsetAngleRad, segments, first),
     slipRad: limb && condition(axis.angle.si.map((rig, i) => rig - (limb[i] as number))),
@@ -66,18 +65,23 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
   };
 }
 
-/** The parts of time's segments in which all columns have values. */
+/** The parts of the segments in which all columns have values. */
 function breakAtMissing(segments: readonly Segment[], columns: readonly Float64Array[]): Segment[] {
   const parts: Segment[] = [];
   for (const { start, end } of segments) {
     let from = start;
     for (let i = start; i <= end; i++) {
-      if (i < end && columns.every((column) => !Number.isNaN(column[i]))) continue;
+      if (i < end && hasAll(columns, i)) continue;
       if (i > from) parts.push({ start: from, end: i });
       from = i + 1;
     }
   }
   return parts;
+}
+
+function hasAll(columns: readonly Float64Array[], i: number): boolean {
+  for (const column of columns) if (Number.isNaN(column[i])) return false;
+  return true;
 }
 
 /** Applies `change` to each segment on its own; NaN outside. */
