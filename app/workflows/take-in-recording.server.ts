@@ -25,6 +25,7 @@ import {
   type UploadRow,
 } from "#app/db/uploads.server.ts";
 import { canonicalJson } from "#app/domain/canonical-json.ts";
+import { fileNamePatternProblem } from "#app/domain/file-name.ts";
 import { compileProtocol, defaultChoices, ProtocolError } from "#app/domain/protocol.ts";
 import {
   type RecordingFacts,
@@ -82,6 +83,8 @@ export async function takeInRecording(desk: Desk, actor: Actor, input: TakeIn): 
 
   const place = await checkPlace(desk, actor, upload.studyId, input);
   if (place.status === "refused") return { ...place, recordingId: null };
+  const patternProblem = input.fileNamePattern && fileNamePatternProblem(input.fileNamePattern);
+  if (patternProblem) return { status: "refused", sentence: patternProblem, recordingId: null };
 
   const complete = await completeObject(desk, actor, upload, input.parts);
   if (complete.status !== "complete") return complete;
