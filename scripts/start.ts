@@ -8,8 +8,6 @@ import { EnvError, readEnv } from "#app/env.server.ts";
 /** How long answers under way may take when the server is told to stop. */
 const GRACE_MS = 10_000;
 
-// The version of Node is pinned, and so are the storage client's packages.
-process.env.AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED ??= "true";
 process.env.NODE_ENV ??= "production";
 
 async function main(): Promise<void> {

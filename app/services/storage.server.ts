@@ -41,6 +41,8 @@ const READY_TIMEOUT_MS = 2000;
 
 export function createStorage(env: StorageEnv): Storage {
   const Bucket = env.bucket;
+  // The client's packages are pinned to releases that run on this Node; it would warn of later ones.
+  process.env.AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED ??= "true";
   const client = new S3Client({
     endpoint: env.endpoint,
     region: env.region,
