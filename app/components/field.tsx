@@ -12,8 +12,11 @@ interface FieldFrame {
   hint?: ReactNode;
   /** What is wrong and what to do; stands beside the field and is read with it. */
   error?: string | string[] | null;
-  /** The label is read out but not drawn, where a column's head says it already. */
-  labelHidden?: boolean;
+  /**
+   * The label is read out but not drawn, where a column's head or the row above says it already;
+   * "wide": drawn on a narrow screen only, where rows fall apart.
+   */
+  labelHidden?: boolean | "wide";
   /** Behind the field ("kg"). */
   unit?: string;
 }
@@ -46,7 +49,7 @@ function Frame({
 }) {
   return (
     <div className="min-w-0">
-      <label className={frame.labelHidden ? "sr-only" : "mb-1 block"} htmlFor={id}>
+      <label className={labelClass(frame.labelHidden)} htmlFor={id}>
         {frame.label}
       </label>
       {frame.hint ? (
@@ -65,6 +68,11 @@ function Frame({
       <FieldError error={error} id={`${id}-error`} />
     </div>
   );
+}
+
+function labelClass(hidden: FieldFrame["labelHidden"]): string {
+  if (hidden === "wide") return "mb-1 block md:sr-only";
+  return hidden ? "sr-only" : "mb-1 block";
 }
 
 /** The sentence below a field that is not right. */
