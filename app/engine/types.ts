@@ -493,3 +493,70 @@ export type ModelFit =
   | { status: "singular" };
 
 export type FittedModel = Extract<ModelFit, { status: "fitted" }>;
+
+// ---------------------------------------------------------------- between the worker and screens
+
+/** What a recording is like once it is open in the worker. */
+export interface OpenedRecording {
+  samples: number;
+  rateHz: number;
+  /** First and last stamp in the file's own time, s. */
+  startS: number;
+  endS: number;
+  flags: Flag[];
+  /** Every window that is found, also those that are left out. */
+  found: WindowChoice[];
+  emg: { muscle: string; unit: "V" | "1" }[];
+}
+
+export interface StretchRequest {
+  axis: string;
+  fromS: number;
+  toS: number;
+  /** Of the screen: more than four samples for each are thinned to its extremes. */
+  pixels: number;
+}
+
+/** Filtered columns of a range of time, as a screen draws them; NaN where a line breaks. */
+export interface Stretch {
+  axis: string;
+  timeS: Float64Array;
+  angleDeg: Float64Array;
+  velocityDegPerS: Float64Array;
+  /** Low-passed, as recorded: background and rig are in it. */
+  torqueNm: Float64Array;
+  /** As recorded, in the order of `OpenedRecording.emg`. */
+  emg: Float64Array[];
+}
+
+export interface ViewRequest {
+  choice: WindowChoice;
+  /** All windows of the axis. */
+  choices: readonly WindowChoice[];
+  pixels: number;
+}
+
+export interface ViewAllRequest {
+  choices: readonly WindowChoice[];
+  pixels: number;
+}
+
+/** One window's fit as a screen draws it. */
+export interface WindowDrawing {
+  window: ResultWindow;
+  /** Each term's largest |torque| over the sum of the three; null where a term is absent. */
+  share: { K: number | null; B: number | null; I: number | null } | null;
+  /** Null where the window is not fitted. */
+  lines: {
+    /** In the file's own time, s. */
+    timeS: Float64Array;
+    /** Relative to the baseline, degrees. */
+    angleDeg: Float64Array;
+    /** As recorded and as the model has it, background and rig in both, N·m. */
+    measuredNm: Float64Array;
+    modelledNm: Float64Array;
+    residualNm: Float64Array;
+    /** Each term's part of the modelled torque of the limb, N·m. */
+    termsNm: { K: Float64Array; B: Float64Array; I: Float64Array };
+  } | null;
+}

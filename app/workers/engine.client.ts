@@ -1,17 +1,15 @@
 import { proxy, type Remote, transfer, wrap } from "comlink";
-import type { Result, WindowsDocument } from "#app/engine/types.ts";
 import type {
-  EngineApi,
-  EngineProblemCode,
-  Opened,
-  Progress,
-  RecordingSource,
+  OpenedRecording,
+  Result,
   Stretch,
   StretchRequest,
   ViewAllRequest,
   ViewRequest,
   WindowDrawing,
-} from "./engine.api.ts";
+  WindowsDocument,
+} from "#app/engine/types.ts";
+import type { EngineApi, EngineProblemCode, Progress, RecordingSource } from "./engine.api.ts";
 
 /** One worker, and a promise that fails when it dies: calls that are pending then never settle. */
 interface Seat {
@@ -43,7 +41,10 @@ export class EngineClient {
   #pooling: Seat | null = null;
   #handedOver: Promise<void> | null = null;
 
-  open(source: RecordingSource, onProgress: (progress: Progress) => void): Promise<Opened> {
+  open(
+    source: RecordingSource,
+    onProgress: (progress: Progress) => void,
+  ): Promise<OpenedRecording> {
     return this.#ask(this.#drawing, this.#drawing.api.open(source, proxy(onProgress)));
   }
 

@@ -8,14 +8,15 @@ import {
   readRecording,
   viewWindow,
 } from "#app/engine/pipeline.ts";
-import type { Prepared, PreparedAxis, Protocol, WindowChoice } from "#app/engine/types.ts";
 import type {
-  EngineApi,
-  EngineProblemCode,
-  RecordingSource,
+  Prepared,
+  PreparedAxis,
+  Protocol,
   Stretch,
+  WindowChoice,
   WindowDrawing,
-} from "./engine.api.ts";
+} from "#app/engine/types.ts";
+import type { EngineApi, EngineProblemCode, RecordingSource } from "./engine.api.ts";
 import { firstAtOrAfter, nearestSample, thinColumns, withoutMissingStamps } from "./thin.ts";
 
 const DEG_PER_RAD = 180 / Math.PI;
@@ -188,10 +189,10 @@ function axisOf(prepared: Prepared, name: string): PreparedAxis {
 function draw(
   { prepared, protocol, timeS, degrees }: Bench,
   choice: WindowChoice,
-  choices: WindowChoice[],
+  choices: readonly WindowChoice[],
   pixels: number,
 ): WindowDrawing {
-  const { window, trace } = viewWindow(prepared, protocol, choice, choices);
+  const { window, trace } = viewWindow(prepared, protocol, choice, [...choices]);
   if (trace === null) return { window, share: null, lines: null };
   const { rateHz } = prepared.signals;
   const from =

@@ -1,5 +1,6 @@
 import { useCallback, useEffect, useState } from "react";
-import type { EngineProblemCode, Opened, Progress, RecordingSource } from "./engine.api.ts";
+import type { OpenedRecording } from "#app/engine/types.ts";
+import type { EngineProblemCode, Progress, RecordingSource } from "./engine.api.ts";
 import type { EngineClient } from "./engine.client.ts";
 
 export interface EngineProblem {
@@ -11,7 +12,7 @@ export interface EngineProblem {
 /** A recording on its way into the browser, there, or not to be had. */
 export type EngineState =
   | { status: "opening"; progress: Progress | null }
-  | { status: "ready"; opened: Opened; engine: EngineClient; source: RecordingSource }
+  | { status: "ready"; opened: OpenedRecording; engine: EngineClient; source: RecordingSource }
   | { status: "failed"; problem: EngineProblem };
 
 const CODES: readonly EngineProblemCode[] = [

@@ -1,0 +1,23 @@
+import { describe, expect, it } from "vitest";
+import { formatMs, formatVaf, reasonInWords, spanInWords, todoOf } from "./words.ts";
+
+describe("words beside numbers", () => {
+  it("writes milliseconds without zeros that say nothing", () => {
+    expect([60, -2.5, 100.25, 0].map(formatMs)).toEqual(["60", "−2.5", "100.25", "0"]);
+    expect(spanInWords([-5, 60])).toBe("−5–60 ms");
+  });
+
+  it("never rounds a VAF up to 100", () => {
+    expect([99.96, 99.9, 87.24, null].map(formatVaf)).toEqual(["99.96", "99.9", "87.2", "–"]);
+  });
+
+  it("says what to do about a flag, and nothing about one it does not know", () => {
+    expect(todoOf({ code: "low_vaf", text: "" })).toContain("residual");
+    expect(todoOf({ code: "toString", text: "" })).toBeNull();
+  });
+
+  it("puts the engine's reason in words and leaves a person's as it is", () => {
+    expect(reasonInWords("overlap").text).toContain("next perturbation");
+    expect(reasonInWords("She laughed").text).toBe("She laughed.");
+  });
+});

@@ -1,0 +1,37 @@
+import { formatNumber, formatRange, withUnit } from "#app/domain/quantity.ts";
+import { FLAGS, REASONS } from "#app/engine/errors.ts";
+import type { Flag } from "#app/engine/types.ts";
+
+/** What to do about a flag; null for one that this version does not know. */
+export function todoOf(flag: Flag): string | null {
+  return isKey(FLAGS, flag.code) ? FLAGS[flag.code].todo : null;
+}
+
+/** Why a window is not in the fit: the engine's code in words, or what a person said. */
+export function reasonInWords(reason: string): { text: string; todo: string | null } {
+  return isKey(REASONS, reason) ? REASONS[reason] : { text: sentence(reason), todo: null };
+}
+
+function isKey<T extends object>(table: T, key: string): key is Extract<keyof T, string> {
+  return Object.hasOwn(table, key);
+}
+
+function sentence(text: string): string {
+  return /[.!?…]$/.test(text) ? text : `${text}.`;
+}
+
+/** Milliseconds without digits that are not there: "60", "−2.5". */
+export function formatMs(ms: number): string {
+  const text = formatNumber(ms, 2);
+  return text.includes(".") ? text.replace(/\.?0+$/, "") : text;
+}
+
+/** "0–60 ms". */
+export function spanInWords([start, end]: readonly [number, number]): string {
+  return withUnit(formatRange(formatMs(start), formatMs(end)), "ms");
+}
+
+/** VAF in percent: one decimal, two where one would round it to 100. */
+export function formatVaf(pct: number | null): string {
+  return formatNumber(pct, pct !== null && pct >= 99.95 && pct < 100 ? 2 : 1);
+}
