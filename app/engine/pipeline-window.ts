@@ -370,14 +370,20 @@ export function traceOf({ signals }: Bench, examined: Examined): WindowView["tra
   if (examined.fit === null) return null;
   const { span } = examined;
   const { columns, fit, baseline } = examined.fit;
+  const n = columns.torqueNm.length;
   const ofTerm = (term: Term) => {
     const value = fit.parameters[term] ?? 0;
-    return columnOf(columns, term).map((x) => value * x);
+    const column = columnOf(columns, term);
+    const torque = new Float64Array(n);
+    for (let i = 0; i < n; i++) torque[i] = value * (column[i] as number);
+    return torque;
   };
-  const firstMs = ((span.start - span.onset) * 1000) / signals.rateHz;
-  const stepMs = 1000 / signals.rateHz;
+  const timeMs = new Float64Array(n);
+  for (let i = 0; i < n; i++) {
+    timeMs[i] = ((span.start - span.onset + i) * 1000) / signals.rateHz;
+  }
   return {
-    timeMs: columns.torqueNm.map((_, i) => firstMs + i * stepMs),
+    timeMs,
     measuredNm: columns.torqueNm,
     modelledNm: fit.modelledNm,
     residualNm: fit.residualNm,

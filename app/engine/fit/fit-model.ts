@@ -60,7 +60,8 @@ export function fitModel(columns: WindowColumns, model: ImpedanceModel): ModelFi
     if (bound.conditionNumber === null) bound.conditionNumber = solution.conditionNumber;
   }
   const modelledNm = modelledTorque(columns, parameters);
-  const residualNm = columns.torqueNm.map((value, i) => value - (modelledNm[i] as number));
+  const residualNm = Float64Array.from(columns.torqueNm);
+  for (let i = 0; i < n; i++) residualNm[i] = (residualNm[i] as number) - (modelledNm[i] as number);
   return {
     status: "fitted",
     parameters,

@@ -95,12 +95,8 @@ function residualSumOfSquares(
   }
   const basis = orthonormal(regressors);
   if (basis === null) return null;
-  const rest = new Float64Array(regressors[0]?.length ?? 0);
-  return (y) => {
-    rest.set(y);
-    for (const direction of basis) takeOut(direction, rest);
-    return dot(rest, rest);
-  };
+  // ‖y‖² less what lies along the columns: its rounding, 1e-16 ‖y‖², is far below a sample's delay.
+  return (y) => basis.reduce((rest, direction) => rest - dot(direction, y) ** 2, dot(y, y));
 }
 
 /** Orthonormal columns with the same span, by Gram and Schmidt twice; null where they are dependent. */
