@@ -1,4 +1,5 @@
 import { createEngineThread, type EngineThread } from "#app/services/engine-thread.server.ts";
+import { log } from "#app/services/log.server.ts";
 
 /** Work that no request waits for, one job at a time: the engine has one thread. */
 export interface Background {
@@ -88,5 +89,5 @@ export function createBackground(onFailure: (key: string, error: unknown) => voi
 
 /** The one of this process. */
 export const background = createBackground((key, error) => {
-  console.error(`Background work on ${key} failed and will be tried again.`, error);
+  log.error({ err: error, key }, "Background work failed and will be tried again");
 });
