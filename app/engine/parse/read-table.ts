@@ -1,0 +1,69 @@
+import { EngineError, flag } from "../errors.ts";
+import type { Table, TableProtocol } from "../types.ts";
+import { decode } from "./decode.ts";
+import { findLayout, HEAD_BYTES, type Layout } from "./layout.ts";
+import { quoted } from "./lines.ts";
+import { scanRows } from "./scan-rows.ts";
+
+/**
+ * Reads the named columns of a recording.
+ *
+ * The head tells the layout; then the bytes are gone over once, and the reading stops at the first
+ * thing that is wrong.
+ *
+ * @param columns  names to read, as in the header but for blanks around them
+ * @throws EngineError "unreadable", with the line where one is to blame
+ */
+export function readTable(
+  file: Uint8Array,
+  table: TableProtocol,
+  columns: readonly string[],
+): Table {
+  const decoded = decode(file);
+  const layout = findLayout(decoded, table, decoded.bytes.length > HEAD_BYTES);
+  const names = [...new Set(columns.map((name) => name.trim()))];
+  const slots = slotsOf(layout, names);
+  const scan = scanRows(decoded.bytes, layout, slots, names.length);
+  if (scan.rows === 0) {
+    throw new EngineError(
+      "unreadable",
+      `No rows stand below the names in line ${layout.dialect.headerLine}.`,
+    );
+  }
+  return {
+    dialect: layout.dialect,
+    header: layout.header,
+    units: layout.units,
+    rows: scan.rows,
+    columns: new Map(names.map((name, i) => [name, scan.columns[i] as Float64Array])),
+    firstDataLine: scan.firstDataLine,
+    skippedLines: scan.skippedLines,
+    flags: scan.truncated ? [...decoded.flags, flag("truncated")] : decoded.flags,
+  };
+}
+
+/** For each column of the file its place among `names`, or −1. */
+function slotsOf(layout: Layout, names: readonly string[]): Int32Array {
+  const { header, dialect } = layout;
+  const slots = new Int32Array(header.length).fill(-1);
+  names.forEach((name, slot) => {
+    const at = header.indexOf(name);
+    if (at < 0) {
+      const shown = header.slice(0, 12).map(quoted).join(", ");
+      throw new EngineError(
+        "unreadable",
+        `The column ${quoted(name)} is missing; line ${dialect.headerLine} names ${shown}${header.length > 12 ? " and more" : ""}.`,
+        { line: dialect.headerLine },
+      );
+    }
+    if (header.includes(name, at + 1)) {
+      throw new EngineError(
+        "unreadable",
+        `Two columns are called ${quoted(name)} in line ${dialect.headerLine}; give each mapped column a name of its own.`,
+        { line: dialect.headerLine },
+      );
+    }
+    slots[at] = slot;
+  });
+  return slots;
+}
