@@ -62,10 +62,11 @@ export function participantOfFields(
   };
 }
 
-/** A rig of the lab by its id, or a new one where its name is typed. */
+/** A new rig where a name is typed, else one of the lab's by its id. */
 export function rigOfFields(typed: TypedFields): StudySetUp["rig"] {
+  const name = textOf(typed, "rigName");
   const id = textOf(typed, "rigId");
-  return id === "" ? { name: textOf(typed, "rigName") } : { id };
+  return name.trim() === "" && id !== "" ? { id } : { name };
 }
 
 export function studyOfFields(typed: unknown): unknown {
