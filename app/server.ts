@@ -125,7 +125,7 @@ function secureHeaders({ publicUrl, storage }: Env): RequestHandler {
       "Cross-Origin-Opener-Policy": "same-origin",
       "Cross-Origin-Resource-Policy": "same-origin",
       "Permissions-Policy":
-        "camera=(), microphone=(), geolocation=(), payment=(), usb=(), serial=(), bluetooth=()",
+        "camera=(), microphone=(), geolocation=(), payment=(), usb=(), serial=()",
     });
     if (publicUrl.protocol === "https:") {
       response.setHeader("Strict-Transport-Security", `max-age=${YEAR_S}`);
