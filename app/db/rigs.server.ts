@@ -42,3 +42,15 @@ export async function updateRigChannelMap(
     .set({ channelMap, version: sql`${rigs.version} + 1` })
     .where(eq(rigs.id, rigId));
 }
+
+/** `impedance`: the rig's own K, B, I by axis, JSON with sorted keys. */
+export async function updateRigImpedance(
+  tx: Transaction,
+  rigId: string,
+  impedance: string,
+): Promise<void> {
+  await tx
+    .update(rigs)
+    .set({ impedance, version: sql`${rigs.version} + 1` })
+    .where(eq(rigs.id, rigId));
+}
