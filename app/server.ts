@@ -14,6 +14,9 @@ import { type Desk, openDesk, readSessionSecret } from "#app/auth/desk.server.ts
 import { type Gate, openGate } from "#app/auth/gate.server.ts";
 import { type Env, readEnv } from "#app/env.server.ts";
 import { log } from "#app/services/log.server.ts";
+import { background } from "#app/workflows/background.server.ts";
+import { resumeVerifications } from "#app/workflows/take-in-recording.server.ts";
+import { resumeSecondLooks } from "#app/workflows/verify-fit.server.ts";
 
 const env = readEnv(process.env);
 const CLIENT_FOLDER = join(import.meta.dirname, "..", "client");
@@ -22,7 +25,10 @@ const YEAR_S = 31_536_000;
 /** Filled by `ready()`; nothing is served before. */
 let open: { desk: Desk; gate: Gate } | null = null;
 
-/** Opens the database (running the migrations) and what stands around it. */
+/**
+ * Opens the database (running the migrations) and what stands around it, and takes up the background
+ * work that the process before this one left.
+ */
 export async function ready(): Promise<void> {
   if (env.isDemo) log.level = "warn";
   const desk = await openDesk(env);
@@ -32,10 +38,13 @@ export async function ready(): Promise<void> {
     isDemo: env.isDemo,
   });
   open = { desk, gate };
+  await resumeVerifications(desk);
+  await resumeSecondLooks(desk);
 }
 
-/** After the last answer: closes what `ready` opened. */
+/** After the last answer: ends the background work and closes what `ready` opened. */
 export async function closing(): Promise<void> {
+  await background.close();
   open?.desk.store.close();
   open = null;
 }
