@@ -4,15 +4,18 @@ import { parabolaVertex } from "#app/engine/math/parabola.ts";
  * Delay of the torque that is left in: the shift with the smallest residual, over all windows each
  * fitted on its own, by a parabola through it and its neighbours.
  *
- * @param profiles  of each window, all as long: residual sum of squares by shift, middle entry 0
+ * @param profiles  of each window: residual sum of squares by shift in samples, 0 in the middle
  * @returns ms, positive where the torque is late; null at an end of the range or without profiles
  */
 export function lagEstimateMs(profiles: readonly Float64Array[], rateHz: number): number | null {
-  const length = profiles[0]?.length ?? 0;
-  if (length < 3 || profiles.some((profile) => profile.length !== length)) return null;
+  if (profiles.length === 0) return null;
+  // Rates that differ in the last digits may reach one sample less far.
+  const length = Math.min(...profiles.map((profile) => profile.length));
+  if (length < 3) return null;
   const sums = new Float64Array(length);
   for (const profile of profiles) {
-    for (let k = 0; k < length; k++) sums[k] = (sums[k] as number) + (profile[k] as number);
+    const cut = (profile.length - length) / 2;
+    for (let k = 0; k < length; k++) sums[k] = (sums[k] as number) + (profile[k + cut] as number);
   }
   let best = 0;
   for (let k = 1; k < length; k++) if ((sums[k] as number) < (sums[best] as number)) best = k;
