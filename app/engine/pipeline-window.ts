@@ -1,5 +1,5 @@
 import type { QuietLevel } from "#app/engine/emg/burst.ts";
-import { emgTiming, isRaised, quietLevel } from "#app/engine/emg/burst.ts";
+import { emgTiming, quietLevel, raisedLimit } from "#app/engine/emg/burst.ts";
 import { movingLevel } from "#app/engine/emg/moving-level.ts";
 import type { FlagCode, ReasonCode } from "#app/engine/errors.ts";
 import { FLAGS, flag } from "#app/engine/errors.ts";
@@ -342,12 +342,13 @@ export function markRaised(
   windows: readonly ResultWindow[],
   kept: readonly (readonly (number | null)[])[],
 ): void {
+  const muscles = windows[0]?.emg.length ?? 0;
+  const limits = Array.from({ length: muscles }, (_, m) =>
+    raisedLimit(kept.flatMap((levels) => levels[m] ?? [])),
+  );
   for (const window of windows) {
-    const raised = window.emg.some(({ baseline }, m) =>
-      isRaised(
-        baseline,
-        kept.flatMap((levels) => levels[m] ?? []),
-      ),
+    const raised = window.emg.some(
+      ({ baseline }, m) => baseline !== null && baseline > (limits[m] as number),
     );
     if (raised) window.flags.push(flag("raised_emg"));
   }

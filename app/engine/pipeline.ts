@@ -4,7 +4,7 @@ import type { Analysed } from "#app/engine/pipeline-pool.ts";
 import { poolAll, poolingOf } from "#app/engine/pipeline-pool.ts";
 import type { AxisRig } from "#app/engine/pipeline-rig.ts";
 import { fitRig, rigProtocol } from "#app/engine/pipeline-rig.ts";
-import type { Place, RecordingInput } from "#app/engine/pipeline-window.ts";
+import type { Bench, Place, RecordingInput } from "#app/engine/pipeline-window.ts";
 import {
   benchOf,
   chosenPlaces,
@@ -70,8 +70,8 @@ export function findWindows(prepared: Prepared, protocol: Protocol): WindowChoic
  * One window's fit with its traces: the call that follows a drag. Its numbers are those of
  * {@link analyze} for a recording on its own.
  *
- * @param choices  all windows of the axis: the next one's onset bounds this one, and their EMG is
- *   what its own is raised against
+ * @param choices  all windows of the recording: those of the axis tell where the next movement
+ *   begins, and the EMG before all that are included what raised EMG is
  */
 export function viewWindow(
   prepared: Prepared,
@@ -79,24 +79,39 @@ export function viewWindow(
   choice: WindowChoice,
   choices: WindowChoice[],
 ): WindowView {
-  const index = protocol.axes.findIndex(({ name }) => name === choice.axis);
-  if (index < 0) throw new RangeError(`The protocol has no axis ${choice.axis}.`);
-  const bench = benchOf(prepared, protocol, index, rigOf(protocol, index));
-  const others = choices.filter(
-    ({ axis, onset_s }) => axis === choice.axis && onset_s !== choice.onset_s,
-  );
-  const [place, ...otherPlaces] = chosenPlaces(bench, [choice, ...others]) as [Place, ...Place[]];
-  const examined = examine(bench, place);
+  const isOther = ({ axis, onset_s }: WindowChoice) =>
+    axis !== choice.axis || onset_s !== choice.onset_s;
+  const others = choices.filter(isOther);
+  const { bench, places } = placesOnAxis(prepared, protocol, choice.axis, [choice, ...others]);
+  const examined = examine(bench, places[0] as Place);
   const window = resultWindow(bench, examined, 0);
   if (window.emg.length > 0) {
-    const kept = otherPlaces.filter((other) => isKept(bench, other));
-    if (window.included) kept.push(place);
-    markRaised(
-      [window],
-      kept.map((each) => emgBaselines(bench, each)),
-    );
+    const kept = protocol.axes.flatMap(({ name }) => {
+      const axis = placesOnAxis(prepared, protocol, name, others);
+      return axis.places
+        .filter((place) => isKept(axis.bench, place))
+        .map((place) => emgBaselines(axis.bench, place));
+    });
+    if (window.included) kept.push(emgBaselines(bench, examined.place));
+    markRaised([window], kept);
   }
   return { window, trace: traceOf(bench, examined) };
+}
+
+function placesOnAxis(
+  prepared: Prepared,
+  protocol: Protocol,
+  name: string,
+  choices: readonly WindowChoice[],
+): { bench: Bench; places: Place[] } {
+  const index = protocol.axes.findIndex((axis) => axis.name === name);
+  if (index < 0) throw new RangeError(`The protocol has no axis ${name}.`);
+  const bench = benchOf(prepared, protocol, index, rigOf(protocol, index));
+  const places = chosenPlaces(
+    bench,
+    choices.filter(({ axis }) => axis === name),
+  );
+  return { bench, places };
 }
 
 /**
@@ -118,15 +133,12 @@ export function analyze(input: {
   const analysed = recordings.flatMap((recording, index) =>
     analyseRecording(protocol, recording, index, rigs, windows),
   );
-  for (const { name } of protocol.axes) {
-    const ofAxis = analysed.map(({ window }) => window).filter(({ axis }) => axis === name);
-    markRaised(
-      ofAxis,
-      ofAxis
-        .filter(({ included }) => included)
-        .map(({ emg }) => emg.map(({ baseline }) => baseline)),
-    );
-  }
+  markRaised(
+    analysed.map(({ window }) => window),
+    analysed
+      .filter(({ window }) => window.included)
+      .map(({ window }) => window.emg.map(({ baseline }) => baseline)),
+  );
   return {
     result_version: 1,
     engine: ENGINE,

@@ -66,9 +66,9 @@ export function emgTiming(
   };
 }
 
-/** Whether a quiet level is over twice the median of those of the windows that are kept. */
-export function isRaised(baseline: number | null, kept: readonly number[]): boolean {
-  return baseline !== null && kept.length > 0 && baseline > RAISED * median(kept);
+/** The level over which one before an onset is raised: twice the median of the included windows'; ∞ for none. */
+export function raisedLimit(kept: readonly number[]): number {
+  return kept.length === 0 ? Number.POSITIVE_INFINITY : RAISED * median(kept);
 }
 
 /** First sample in [from, last] at which a run of at least `least` samples over the limit begins. */

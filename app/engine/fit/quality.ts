@@ -19,8 +19,8 @@ export function qualityOf(torqueNm: Float64Array, residualNm: Float64Array): Fit
 
 /** Whether the residual grows late: the RMS of its last quarter is over twice that of the rest. */
 export function hasLateResidual(residualNm: Float64Array): boolean {
-  const from = residualNm.length - Math.floor(residualNm.length / 4);
-  if (from === residualNm.length) return false;
+  const from = residualNm.length - Math.round(residualNm.length / 4);
+  if (from === residualNm.length || from === 0) return false;
   return rms(residualNm, from) > 2 * rms(residualNm, 0, from);
 }
 
