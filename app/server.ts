@@ -14,16 +14,17 @@ import { type Desk, openDesk, readSessionSecret } from "#app/auth/desk.server.ts
 import { type Gate, openGate } from "#app/auth/gate.server.ts";
 import { type Env, readEnv } from "#app/env.server.ts";
 import { log } from "#app/services/log.server.ts";
-import { background } from "#app/workflows/background.server.ts";
-import { resumeVerifications } from "#app/workflows/take-in-recording.server.ts";
-import { resumeSecondLooks } from "#app/workflows/verify-fit.server.ts";
+import { resumeWork, stopWork } from "#app/workflows/resume-work.server.ts";
 
 const env = readEnv(process.env);
 const CLIENT_FOLDER = join(import.meta.dirname, "..", "client");
 const YEAR_S = 31_536_000;
+/** What failed for the moment (the storage did not answer) is tried again after this. */
+const RESUME_EVERY_MS = 5 * 60 * 1000;
 
 /** Filled by `ready()`; nothing is served before. */
 let open: { desk: Desk; gate: Gate } | null = null;
+let resuming: NodeJS.Timeout | undefined;
 
 /**
  * Opens the database (running the migrations) and what stands around it, and takes up the background
@@ -38,13 +39,16 @@ export async function ready(): Promise<void> {
     isDemo: env.isDemo,
   });
   open = { desk, gate };
-  await resumeVerifications(desk);
-  await resumeSecondLooks(desk);
+  const resume = () =>
+    resumeWork(desk).catch((error: unknown) => log.error({ err: error }, "Resuming work failed"));
+  await resume();
+  resuming = setInterval(resume, RESUME_EVERY_MS).unref();
 }
 
 /** After the last answer: ends the background work and closes what `ready` opened. */
 export async function closing(): Promise<void> {
-  await background.close();
+  clearInterval(resuming);
+  await stopWork();
   open?.desk.store.close();
   open = null;
 }
