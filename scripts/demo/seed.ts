@@ -7,7 +7,7 @@ import type { Desk } from "#app/auth/desk.server.ts";
 import { openDesk } from "#app/auth/desk.server.ts";
 import { hashPassword } from "#app/auth/password.server.ts";
 import { recordEvent } from "#app/db/events.server.ts";
-import { findCurrentFit, findRecordingContext } from "#app/db/fits.server.ts";
+import { findCurrentFit, findRecordingContext, getFitRow } from "#app/db/fits.server.ts";
 import { listParticipants } from "#app/db/participants.server.ts";
 import {
   findLabByName,
@@ -38,7 +38,7 @@ import { createStudy } from "#app/workflows/set-up-study.server.ts";
 import { compileFor, storeFit } from "#app/workflows/store-fit.server.ts";
 import { submitFit } from "#app/workflows/submit-fit.server.ts";
 import { takeInRecording, verificationKey } from "#app/workflows/take-in-recording.server.ts";
-import { secondLookKey } from "#app/workflows/verify-fit.server.ts";
+import { queueSecondLook, secondLookKey } from "#app/workflows/verify-fit.server.ts";
 import {
   AXES,
   CONDITIONS,
@@ -264,11 +264,12 @@ async function seedRecording(
     throw new Error(`${recording.fileName} was not taken in: ${row?.refusal ?? "no reason"}`);
   }
   const goal = goalOf(recording);
-  if (goal === "recorded" || (await findCurrentFit(db, row.id))) return false;
-  const fitId = await saveFit(desk, actors.biomechanist, row.id, bytes, recording);
-  await background.ended(secondLookKey(fitId));
+  if (goal === "recorded") return false;
+  // A start that was interrupted goes on from the state that it reached.
+  const current = await findCurrentFit(db, row.id);
+  const fitId = current?.id ?? (await saveFit(desk, actors.biomechanist, row.id, bytes, recording));
   if (goal !== "draft") await handOn(desk, actors, fitId, goal);
-  return true;
+  return current === null;
 }
 
 /** How far each recording has come: enough of each state to see what it looks like. */
@@ -396,13 +397,22 @@ async function handOn(
   fitId: string,
   goal: "submitted" | "approved" | "returned",
 ): Promise<void> {
-  const submitted = await submitFit(desk, actors.biomechanist, { fitId, version: 2 });
-  if (submitted.status !== "submitted") throw new Error(submitted.sentence);
-  if (goal === "submitted") return;
+  const { db } = desk.store;
+  const { labId } = actors.biomechanist;
+  queueSecondLook(desk, labId, fitId);
+  await background.ended(secondLookKey(fitId));
+  let fit = await getFitRow(db, labId, fitId);
+  if (fit.state === "draft") {
+    const { version } = fit;
+    const submitted = await submitFit(desk, actors.biomechanist, { fitId, version });
+    if (submitted.status !== "submitted") throw new Error(submitted.sentence);
+    fit = await getFitRow(db, labId, fitId);
+  }
+  if (goal === "submitted" || fit.state !== "submitted") return;
   await openResiduals(desk, actors.reviewer, { fitId });
   const reviewed = await reviewFit(desk, actors.reviewer, {
     fitId,
-    version: submitted.version,
+    version: fit.version,
     decision: goal,
     note:
       goal === "returned"
