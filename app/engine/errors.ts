@@ -21,6 +21,16 @@ export class EngineError extends Error {
   }
 }
 
+/** A text from a file as it may stand in a sentence: without line ends, at most 40 letters. */
+export function oneLine(text: string): string {
+  const line = text.replace(/[\p{Cc}\u2028\u2029]+/gu, " ");
+  return line.length > 40 ? `${line.slice(0, 39)}…` : line;
+}
+
+export function quoted(text: string): string {
+  return `"${oneLine(text)}"`;
+}
+
 interface Remark {
   /** One plain sentence. */
   text: string;

@@ -1,9 +1,9 @@
 import Papa from "papaparse";
-import { EngineError } from "../errors.ts";
+import { EngineError, quoted } from "../errors.ts";
 import { isUnitText } from "../math/units.ts";
 import type { Dialect, TableProtocol } from "../types.ts";
 import { type Decoded, textOf } from "./decode.ts";
-import { MOST_COLUMNS, quoted, walkLines } from "./lines.ts";
+import { cellCount, MOST_COLUMNS, walkLines } from "./lines.ts";
 import { isMissing, isNumber } from "./number.ts";
 
 /** How a file is laid out, and where its rows begin. */
@@ -27,12 +27,17 @@ export const HEAD_BYTES = 256 * 1024;
 const GLANCE_BYTES = 64 * 1024;
 const PREVIEW_ROWS = 20;
 const PREAMBLE_LINES = 200;
+/** Rows that are tried as names. */
+const ROWS_TRIED = 2000;
 /** Rows after a line that decide whether it can be the names above them. */
 const ROWS_BELOW = 20;
 
+/** A row that is not blank. */
 interface Row {
   /** Physical line on which the row begins. */
   line: number;
+  /** Physical line behind it. */
+  nextLine: number;
   cells: string[];
 }
 
@@ -96,9 +101,8 @@ export function findLayout(decoded: Decoded, table: TableProtocol, cut: boolean)
   const header = named.cells.slice(0, reading.width);
   const unitsRow = reading.units === null ? null : (reading.rows[reading.units] as Row);
   const body = reading.rows.slice((reading.units ?? reading.header) + 1);
-  const last = unitsRow ?? named;
-  const dataLine = body[0]?.line ?? last.line + 1 + newlinesIn(last.cells);
-  const data = walkLines(bytes, start.offset, start.line, (line) => line < dataLine);
+  const { nextLine } = unitsRow ?? named;
+  const data = walkLines(bytes, start.offset, start.line, (line) => line < nextLine);
   return {
     dialect: {
       encoding: decoded.encoding,
@@ -110,10 +114,7 @@ export function findLayout(decoded: Decoded, table: TableProtocol, cut: boolean)
     header,
     units: header.map((name, i) => unitOf(name, unitsRow?.cells[i])),
     preamble: preambleOf(decoded, named.line),
-    rows: body
-      .filter((row) => !isBlank(row.cells))
-      .slice(0, PREVIEW_ROWS)
-      .map((row) => header.map((_, i) => row.cells[i] ?? "")),
+    rows: body.slice(0, PREVIEW_ROWS).map((row) => header.map((_, i) => row.cells[i] ?? "")),
     runs: reading.runs,
     dataOffset: data.offset,
     dataLine: data.line,
@@ -166,6 +167,7 @@ function bestReading(text: string, firstLine: number, table: TableProtocol): Rea
     for (const dialect of dialects) {
       const rows = rowsOf(text.slice(from), line, dialect.separator, dialect.runs);
       for (const decimal of decimals) {
+        if (forced && rows[0]?.line !== firstLine) continue;
         const reading = read(rows, { ...dialect, decimal }, forced);
         if (reading !== null) readings.push(reading);
       }
@@ -209,11 +211,14 @@ function rowsOf(
   if (text.length > HEAD_BYTES && text.length * text.split('"').length > 4e10) return [];
   const parsed = Papa.parse<string[]>(prepared, { delimiter: separator, newline: "\n" });
   let line = firstLine;
-  return parsed.data.map((cells) => {
-    const row = { line, cells: cells.map((cell) => cell.trim()) };
-    line += 1 + newlinesIn(cells);
-    return row;
-  });
+  const rows: Row[] = [];
+  for (const raw of parsed.data) {
+    const nextLine = line + 1 + newlinesIn(raw);
+    const cells = raw.slice(0, MOST_COLUMNS + 2).map((cell) => cell.trim());
+    if (cells.length > 1 || cells[0] !== "") rows.push({ line, nextLine, cells });
+    line = nextLine;
+  }
+  return rows;
 }
 
 function newlinesIn(texts: readonly string[]): number {
@@ -222,10 +227,6 @@ function newlinesIn(texts: readonly string[]): number {
     for (let at = text.indexOf("\n"); at >= 0; at = text.indexOf("\n", at + 1)) count++;
   }
   return count;
-}
-
-function isBlank(cells: readonly string[]): boolean {
-  return cells.length === 1 && cells[0] === "";
 }
 
 /** As many cells as the header, or one more that is empty (one trailing separator). */
@@ -244,7 +245,8 @@ function read(
     ),
   );
   let best: { header: number; names: Names } | null = null;
-  for (let header = 0; header < (forced ? 1 : rows.length); header++) {
+  const tried = Math.min(rows.length, forced ? 1 : ROWS_TRIED);
+  for (let header = 0; header < tried; header++) {
     const names = namesAt(rows, kinds, header, forced);
     if (names === null) continue;
     // The first of the highest rank; where nothing fits, the last above the numbers is to blame.
@@ -286,9 +288,7 @@ function namesAt(rows: Row[], kinds: Uint8Array[], at: number, forced: boolean):
   if (!isName.includes(true)) return null;
 
   const below: number[] = [];
-  for (let i = at + 1; i < rows.length && below.length <= ROWS_BELOW; i++) {
-    if (!isBlank((rows[i] as Row).cells)) below.push(i);
-  }
+  for (let i = at + 1; i < rows.length && i <= at + ROWS_BELOW + 1; i++) below.push(i);
   const first = below[0];
   const units = first !== undefined && isUnitsRow((rows[first] as Row).cells, width) ? first : null;
   if (units !== null) below.shift();
@@ -388,14 +388,12 @@ function refuseMisfit(reading: Reading, named: Row): void {
   if (width > MOST_COLUMNS) {
     throw new EngineError(
       "unreadable",
-      `Line ${named.line} has ${width} columns; at most ${MOST_COLUMNS} can be read.`,
+      `Line ${named.line} has more than ${MOST_COLUMNS} columns, which is the most that can be read.`,
       { line: named.line },
     );
   }
   if (reading.rank > 0) return;
-  const misfit = rows
-    .slice((units ?? header) + 1)
-    .find((row) => !isBlank(row.cells) && !fits(row.cells, width));
+  const misfit = rows.slice((units ?? header) + 1).find((row) => !fits(row.cells, width));
   if (misfit === undefined) {
     throw new EngineError(
       "unreadable",
@@ -405,7 +403,7 @@ function refuseMisfit(reading: Reading, named: Row): void {
   }
   throw new EngineError(
     "unreadable",
-    `Line ${misfit.line} has ${misfit.cells.length} cells, but the names in line ${named.line} are ${width}: ${named.cells.slice(0, 6).map(quoted).join(", ")}${width > 6 ? " …" : ""}.`,
+    `Line ${misfit.line} has ${cellCount(misfit.cells.length)}, but the names in line ${named.line} are ${width}: ${named.cells.slice(0, 6).map(quoted).join(", ")}${width > 6 ? " …" : ""}.`,
     { line: misfit.line },
   );
 }

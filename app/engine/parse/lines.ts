@@ -53,9 +53,6 @@ export function refuseLongLine(line: number): never {
   );
 }
 
-/** A text from the file as it may stand in a sentence: one line, not too long. */
-export function quoted(text: string): string {
-  // biome-ignore lint/suspicious/noControlCharactersInRegex: they are what is taken out
-  const line = text.replace(/[\u0000-\u001f\u007f-\u009f\u2028\u2029]+/g, " ");
-  return `"${line.length > 40 ? `${line.slice(0, 39)}…` : line}"`;
+export function cellCount(cells: number): string {
+  return cells === 1 ? "1 cell" : `${cells} cells`;
 }

@@ -242,6 +242,7 @@ describe("previewTable", () => {
   it("refuses a stated header row that is not there or holds no names", () => {
     const text = `t,ang,trq\n${rows(",", ".")}`;
     expect(() => preview(text, { header_row: 99 })).toThrow(/only 31 lines/);
+    expect(() => preview(`\n${text}`, { header_row: 1 })).toThrow(/no column names/);
     expect(() => preview(text, { header_row: 2 })).toThrow(
       expect.objectContaining({ line: 2, message: expect.stringMatching(/no column names/) }),
     );

@@ -1,8 +1,7 @@
-import { EngineError, flag } from "../errors.ts";
+import { EngineError, flag, quoted } from "../errors.ts";
 import type { Table, TableProtocol } from "../types.ts";
 import { decode } from "./decode.ts";
 import { findLayout, HEAD_BYTES, type Layout } from "./layout.ts";
-import { quoted } from "./lines.ts";
 import { scanRows } from "./scan-rows.ts";
 
 /**

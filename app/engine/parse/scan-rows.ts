@@ -1,7 +1,7 @@
-import { EngineError } from "../errors.ts";
+import { EngineError, quoted } from "../errors.ts";
 import { textOf } from "./decode.ts";
 import type { Layout } from "./layout.ts";
-import { afterLineEnd, LONGEST_LINE, lineEndFrom, quoted, refuseLongLine } from "./lines.ts";
+import { afterLineEnd, cellCount, LONGEST_LINE, lineEndFrom, refuseLongLine } from "./lines.ts";
 import { LARGEST_VALUE, numberOf } from "./number.ts";
 
 const TAB = 0x09;
@@ -397,7 +397,7 @@ function cellsIn(bytes: Uint8Array, rowStart: number, to: number, layout: Layout
 function refuseWidth(line: number, cells: number, width: number, headerLine: number): never {
   throw new EngineError(
     "unreadable",
-    `Line ${line} has ${cells} cells, but the names in line ${headerLine} are ${width}.`,
+    `Line ${line} has ${cellCount(cells)}, but the names in line ${headerLine} are ${width}.`,
     { line },
   );
 }
