@@ -288,7 +288,7 @@ export function makeRecordingFile(recording: ScenarioRecording, seed: number): U
   }));
   return writeFile(axes, ramps, random, {
     gap: recording.defect === "gap" ? gapInside(ramps) : null,
-    clipAtNm: recording.defect === "clipped torque" ? 0.75 : Number.POSITIVE_INFINITY,
+    clipAtNm: recording.defect === "clipped torque" ? 1.05 : Number.POSITIVE_INFINITY,
   });
 }
 
@@ -332,7 +332,10 @@ function writeFile(
       [
         (timeS * 1000).toFixed(1),
         ...cells.map((cell) => cell.angleDeg.toFixed(4)),
-        ...cells.map((cell) => clamp(cell.torqueNm, defects.clipAtNm).toFixed(4)),
+        // The amplifier of the first torque channel alone was set too high.
+        ...cells.map((cell, k) =>
+          (k === 0 ? clamp(cell.torqueNm, defects.clipAtNm) : cell.torqueNm).toFixed(4),
+        ),
         trigger,
       ].join(","),
     );
@@ -370,10 +373,10 @@ function sampleAxis(axis: AxisScenario, timeS: number, random: Random) {
   return { angleDeg: axis.fileSign * angleDeg, torqueNm: axis.fileSign * torqueNm };
 }
 
-/** 36 ms without samples in the middle of the sixth ramp. */
+/** 36 ms without samples, from the second half of the sixth ramp on. */
 function gapInside(ramps: Ramp[]): { fromS: number; toS: number } {
   const startS = (ramps[5] as Ramp).startS;
-  return { fromS: startS + 0.012, toS: startS + 0.048 };
+  return { fromS: startS + 0.026, toS: startS + 0.062 };
 }
 
 function clamp(value: number, limit: number): number {
