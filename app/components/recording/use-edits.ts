@@ -2,6 +2,7 @@ import { useCallback, useEffect, useMemo, useRef, useState } from "react";
 import type { SavedWindow } from "#app/domain/fit.ts";
 import {
   countUnsaved,
+  markSaved,
   restoreEdits,
   serializeEdits,
   startEdits,
@@ -27,6 +28,8 @@ export interface Edits {
   /** False where this browser cannot keep them. */
   kept: boolean;
   change(next: (list: WindowEdits) => WindowEdits): void;
+  /** These windows were saved as this fit. */
+  saved(fitId: string, windows: readonly SavedWindow[]): void;
   /** Goes on with one's own edits, over what is current now. */
   keepMine(): void;
   /** Goes on with the current fit; the own list stays for `bringBack`. */
@@ -52,6 +55,8 @@ export function useEdits(storageKey: string, base: EditBase | null): Edits {
   const [kept, setKept] = useState(true);
   const lists = useRef(list);
   lists.current = list;
+  /** Bases that one's own saving has replaced: the page may still hold one for a moment. */
+  const replaced = useRef(new Set<string | null>());
 
   // The first list: what was kept here, else the base.
   useEffect(() => {
@@ -61,8 +66,10 @@ export function useEdits(storageKey: string, base: EditBase | null): Edits {
       const back = restore(storageKey, base);
       setList(back ?? startEdits(base));
       setRestored(back === null ? 0 : countUnsaved(back));
-    } else if (now.baseFitId !== base.baseFitId && countUnsaved(now) === 0) {
-      setList(startEdits(base));
+    } else if (countUnsaved(now) === 0 && !replaced.current.has(base.baseFitId)) {
+      const isOther = now.baseFitId !== base.baseFitId;
+      // Windows that the engine found under another protocol are other windows.
+      if (isOther || base.baseFitId === null) setList(startEdits(base));
     }
   }, [base, storageKey]);
 
@@ -71,13 +78,25 @@ export function useEdits(storageKey: string, base: EditBase | null): Edits {
   }, [list, storageKey]);
 
   const theirs =
-    base !== null && list !== null && list.baseFitId !== base.baseFitId && countUnsaved(list) > 0
+    base !== null &&
+    list !== null &&
+    list.baseFitId !== base.baseFitId &&
+    !replaced.current.has(base.baseFitId) &&
+    countUnsaved(list) > 0
       ? base
       : null;
 
   const change = useCallback((next: (held: WindowEdits) => WindowEdits) => {
     setList((held) => (held === null ? null : next(held)));
     setRestored(0);
+  }, []);
+  const saved = useCallback((fitId: string, windows: readonly SavedWindow[]) => {
+    setList((held) => {
+      if (held === null) return null;
+      replaced.current.add(held.baseFitId);
+      // Edits made while the answer was on its way are not among what was saved.
+      return { ...markSaved(held, fitId), saved: windows };
+    });
   }, []);
   const keepMine = useCallback(() => {
     if (theirs === null) return;
@@ -108,12 +127,13 @@ export function useEdits(storageKey: string, base: EditBase | null): Edits {
       theirs,
       kept,
       change,
+      saved,
       keepMine,
       takeTheirs,
       left,
       bringBack,
     }),
-    [list, restored, theirs, kept, change, keepMine, takeTheirs, left, bringBack],
+    [list, restored, theirs, kept, change, saved, keepMine, takeTheirs, left, bringBack],
   );
 }
 

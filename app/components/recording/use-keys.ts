@@ -26,7 +26,7 @@ export function useSingleKeys(): [boolean, (enabled: boolean) => void] {
 }
 
 /**
- * Single keys of a page: "x", "Shift+Z", "ArrowLeft". Nothing happens while something is typed, in
+ * Single keys of a page: "x", "shift+z", "arrowleft". Nothing happens while something is typed, in
  * an open dialog, or together with Ctrl, Alt or the command key.
  */
 export function useKeys(keys: Readonly<Record<string, () => void>>, enabled: boolean): void {
@@ -36,9 +36,8 @@ export function useKeys(keys: Readonly<Record<string, () => void>>, enabled: boo
     const pressed = (event: KeyboardEvent) => {
       if (event.defaultPrevented || event.ctrlKey || event.altKey || event.metaKey) return;
       if (isTyping(event.target) || document.querySelector("dialog[open]")) return;
-      const isLetter = event.key.length === 1 && /[a-z]/i.test(event.key);
-      const name = isLetter ? event.key.toLowerCase() : event.key;
-      const run = (event.shiftKey && held.current[`Shift+${name}`]) || held.current[name];
+      const name = event.key.toLowerCase();
+      const run = (event.shiftKey && held.current[`shift+${name}`]) || held.current[name];
       // The list of keys can always be opened: there they are switched on again.
       if (!run || (!enabled && name !== "?")) return;
       event.preventDefault();
