@@ -1,5 +1,7 @@
+import { columnsOf, toSignals } from "#app/engine/channels/signals.ts";
 import { EngineError, flag } from "#app/engine/errors.ts";
 import { impedanceModel, SAMPLES_PER_TERM } from "#app/engine/fit/fit-model.ts";
+import { readTable } from "#app/engine/parse/read-table.ts";
 import type { Analysed } from "#app/engine/pipeline-pool.ts";
 import { poolAll, poolingOf } from "#app/engine/pipeline-pool.ts";
 import type { AxisRig } from "#app/engine/pipeline-rig.ts";
@@ -37,7 +39,9 @@ export type { RecordingInput } from "#app/engine/pipeline-window.ts";
 export const ENGINE = "ogee-engine 1.0.0";
 
 /** Bytes → Signals. @throws EngineError */
-export declare function readRecording(bytes: Uint8Array, protocol: Protocol): Signals;
+export function readRecording(bytes: Uint8Array, protocol: Protocol): Signals {
+  return toSignals(readTable(bytes, protocol.table, columnsOf(protocol)), protocol);
+}
 
 /**
  * Signals → filtered, differentiated columns.
