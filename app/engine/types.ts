@@ -560,3 +560,67 @@ export interface WindowDrawing {
     termsNm: { K: Float64Array; B: Float64Array; I: Float64Array };
   } | null;
 }
+
+// ---------------------------------------------------------------- a file that is not taken in yet
+
+export interface ProposedChannel {
+  column: string;
+  /** As the file states it, or as the steps of time tell it; null where nothing does. */
+  unit: Unit | null;
+  /** Name and unit leave no doubt: else the person should look. */
+  certain: boolean;
+}
+
+export interface ProposedTime extends ProposedChannel {
+  unit: "s" | "ms" | "us" | null;
+}
+
+export interface ProposedEmg extends ProposedChannel {
+  unit: "V" | "mV" | "uV" | null;
+  muscle: string;
+}
+
+/** What names, units and first values of a file's columns suggest; null where nothing fits. */
+export interface ProposedMap {
+  time: ProposedTime | null;
+  /** One entry for each of the study's axes, in their order. */
+  axes: {
+    name: string;
+    angle: ProposedChannel | null;
+    torque: ProposedChannel | null;
+    limbAngle: ProposedChannel | null;
+  }[];
+  trigger: string | null;
+  emg: ProposedEmg[];
+}
+
+/** A file's first part. */
+export type FileHead =
+  | { status: "read"; preview: TablePreview; proposed: ProposedMap }
+  | { status: "refused"; sentence: string; line: number | null };
+
+/** The first movement about an axis, in the signs of the protocol that it was read with. */
+export type AxisMovement =
+  | {
+      axis: string;
+      status: "moved";
+      /** In the file's own time, s. */
+      onsetS: number;
+      /** Negative: towards the axis' negative direction. */
+      amplitudeDeg: number;
+      /** 1 where torque rises with the angle, −1 where it falls (K < 0), 0 where it tells neither. */
+      torqueSign: 1 | -1 | 0;
+    }
+  | { axis: string; status: "still" };
+
+/** A whole file, read with a map before it is taken in. */
+export type FileReading =
+  | {
+      status: "read";
+      facts: Pick<
+        Signals,
+        "samples" | "rateHz" | "durationS" | "gaps" | "duplicates" | "missing" | "flags"
+      >;
+      movements: AxisMovement[];
+    }
+  | { status: "refused"; sentence: string; line: number | null };
