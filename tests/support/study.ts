@@ -57,10 +57,14 @@ export interface TestStudy {
   postureId: string;
 }
 
-export async function setUpStudy(lab: TestLab, values: StudySetUp = setUp): Promise<TestStudy> {
-  const created = await createStudy(lab.desk, lab.actor("biomechanist"), values);
+export async function setUpStudy(
+  lab: TestLab,
+  values: StudySetUp = setUp,
+  actor: Actor = lab.actor("biomechanist"),
+): Promise<TestStudy> {
+  const created = await createStudy(lab.desk, actor, values);
   if (created.status !== "created") throw new Error(created.sentence);
-  const plan = await findStudyPlan(lab.store.db, lab.lab.id, created.studyId);
+  const plan = await findStudyPlan(lab.store.db, actor.labId, created.studyId);
   const participants = await listParticipants(lab.store.db, created.studyId);
   return {
     studyId: created.studyId,

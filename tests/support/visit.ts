@@ -36,6 +36,8 @@ export interface Visit {
   cookie?: string;
   /** A posted form; left out: the address is read. */
   form?: Record<string, string>;
+  /** A posted document, as a script of a page sends it. */
+  json?: unknown;
   headers?: Record<string, string>;
   remoteAddress?: string;
 }
@@ -46,12 +48,19 @@ export function visit<Params extends Record<string, string>>(
   gate: Gate,
   path: string,
   params: Params,
-  { cookie, form, headers = {}, remoteAddress = "192.0.2.1" }: Visit = {},
+  { cookie, form, json, headers = {}, remoteAddress = "192.0.2.1" }: Visit = {},
 ) {
   const url = new URL(path, TEST_ORIGIN);
+  const body = form ? new URLSearchParams(form) : json !== undefined ? JSON.stringify(json) : null;
   const request = new Request(url, {
-    headers: { ...headers, ...(cookie === undefined ? {} : { Cookie: cookie }) },
-    ...(form === undefined ? {} : { method: "POST", body: new URLSearchParams(form) }),
+    method: body === null ? "GET" : "POST",
+    body,
+    headers: {
+      ...(json === undefined ? {} : { "Content-Type": "application/json" }),
+      ...(body === null ? {} : { "Content-Length": String(Buffer.byteLength(String(body))) }),
+      ...(cookie === undefined ? {} : { Cookie: cookie }),
+      ...headers,
+    },
   });
   const context = new RouterContextProvider();
   context.set(deskContext, lab.desk);
