@@ -62,13 +62,11 @@ interface Pooling {
   tail: PlacedColumns | null;
 }
 
-/** What is pooled together, and with what. */
+/** What is pooled together, and by which protocol. */
 interface Group {
   protocol: Protocol;
   model: ImpedanceModel;
-  axis: number;
-  rig: Impedance;
-  recordings: readonly RecordingInput[];
+  direction: string;
   /** Included windows in the order of recordings and time. */
   windows: readonly (Analysed & { pooling: Pooling })[];
 }
@@ -97,17 +95,21 @@ export function poolAll(
   const model = impedanceModel(protocol.model);
   const pooled = protocol.axes.flatMap(({ name, positive, negative }, axis) => {
     const { rig, measured } = rigs[axis] as { rig: Impedance; measured: boolean };
-    const ofAxis = analysed.filter(({ window }) => window.axis === name);
-    return [positive, negative].flatMap((direction) => {
-      const all = ofAxis.filter(({ window }) => window.direction === direction);
-      if (all.length === 0) return [];
+    const groups = [positive, negative].flatMap((direction): Group[] => {
+      const all = analysed.filter(
+        ({ window }) => window.axis === name && window.direction === direction,
+      );
       const windows = all.flatMap((each) =>
         each.pooling === null ? [] : [{ ...each, pooling: each.pooling }],
       );
-      const group = { protocol, model, axis, rig, recordings, windows };
-      const { entry, codes } = poolGroup(group, name, direction);
+      return all.length === 0 ? [] : [{ protocol, model, direction, windows }];
+    });
+    const surfaces = robustnessOf({ protocol, model, axis, rig, recordings }, groups);
+    return groups.map((group, g) => {
+      const { entry, codes } = poolGroup(group, name);
       if (!measured && rig.K === 0 && rig.B === 0 && rig.I === 0) codes.push("rig_not_removed");
-      return [{ ...entry, flags: flagsOf(codes) }];
+      const robustness = group.windows.length === 0 ? null : (surfaces?.[g] ?? null);
+      return { ...entry, robustness, flags: flagsOf(codes) };
     });
   });
   return pooled.sort(
@@ -118,8 +120,7 @@ export function poolAll(
 function poolGroup(
   group: Group,
   axis: string,
-  direction: string,
-): { entry: Omit<ResultPooled, "flags">; codes: FlagCode[] } {
+): { entry: Omit<ResultPooled, "flags" | "robustness">; codes: FlagCode[] } {
   const { protocol, model, windows } = group;
   const fits = windows.map(({ pooling }) => pooling.fit);
   const stack = stackColumns(windows.map(({ pooling }) => pooling.placed.columns));
@@ -139,7 +140,7 @@ function poolGroup(
     : null;
   const entry = {
     axis,
-    direction,
+    direction: group.direction,
     windows: windows.length,
     ...terms,
     vaf_pct: quality?.vaf_pct ?? null,
@@ -152,7 +153,6 @@ function poolGroup(
             rateHz,
           ),
     order_lag1: orderLag1,
-    robustness: stacked && robustnessOf(group),
     late:
       stacked && rateHz !== null && asksForLate(protocol)
         ? lateOf(group, stacked, quality?.rms_residual ?? null, rateHz)
@@ -218,79 +218,88 @@ function lateOf(
 
 // ---------------------------------------------------------------- robustness of the choices
 
+/** Where the windows of one axis were cut from. */
+interface Source {
+  protocol: Protocol;
+  model: ImpedanceModel;
+  axis: number;
+  rig: Impedance;
+  recordings: readonly RecordingInput[];
+}
+
 /**
- * The stacked estimate for other window ends and cut-offs, with the onsets and exclusions of the
- * main fit; null where a window's span would be excluded or the cut-off does not suit the rate.
+ * For each group the stacked estimate for other window ends and cut-offs, with the onsets and
+ * exclusions of the main fit; null where a window's span would be excluded or the cut-off does not
+ * suit the rate.
  */
-function robustnessOf(group: Group): ResultPooled["robustness"] {
-  const { protocol } = group;
-  const { robustness, filter } = protocol;
+function robustnessOf(
+  source: Source,
+  groups: readonly Group[],
+): NonNullable<ResultPooled["robustness"]>[] | null {
+  const { robustness, filter } = source.protocol;
   if (robustness === undefined) return null;
-  const tried =
-    filter === null
-      ? [null]
-      : robustness.cutoff_hz.length > 0
-        ? robustness.cutoff_hz
-        : [filter.cutoff_hz];
-  const estimates = tried.map((cutoffHz) => estimatesAt(group, cutoffHz, robustness.window_end_ms));
-  return robustness.window_end_ms.flatMap((windowEndMs, end) =>
-    tried.map((cutoffHz, cutoff) => ({
-      window_end_ms: windowEndMs,
-      cutoff_hz: cutoffHz,
-      ...(estimates[cutoff]?.[end] ?? { K: null, B: null, I: null }),
-    })),
+  const own = filter === null ? null : filter.cutoff_hz;
+  const tried: (number | null)[] =
+    own === null || robustness.cutoff_hz.length === 0 ? [own] : robustness.cutoff_hz;
+  const estimates = tried.map((cutoffHz) =>
+    estimatesAt(source, groups, cutoffHz, robustness.window_end_ms),
+  );
+  return groups.map((_, g) =>
+    robustness.window_end_ms.flatMap((windowEndMs, end) =>
+      tried.map((cutoffHz, cutoff) => ({
+        window_end_ms: windowEndMs,
+        cutoff_hz: cutoffHz,
+        ...(estimates[cutoff]?.[g]?.[end] ?? { K: null, B: null, I: null }),
+      })),
+    ),
   );
 }
 
-/** One estimate for each window end, at one cut-off. */
+/** Of each group one estimate for each window end, at one cut-off. */
 function estimatesAt(
-  { protocol, model, axis, rig, recordings, windows }: Group,
+  { protocol, model, axis, rig, recordings }: Source,
+  groups: readonly Group[],
   cutoffHz: number | null,
   windowEndsMs: readonly number[],
-): (FittedModel["parameters"] | null)[] {
+): (FittedModel["parameters"] | null)[][] {
   const filter =
     protocol.filter && cutoffHz !== null ? { ...protocol.filter, cutoff_hz: cutoffHz } : null;
-  const stacks: (WindowColumns[] | null)[] = windowEndsMs.map(() => []);
+  const stacks = groups.map(() => windowEndsMs.map((): WindowColumns[] | null => []));
   for (const [index, { signals }] of recordings.entries()) {
-    const own = windows.filter(({ window }) => window.recording === index);
-    if (own.length === 0) continue;
-    if (cutoffHz !== null && cutoffHz >= signals.rateHz / 2) return windowEndsMs.map(() => null);
+    const isHere = ({ window }: Analysed) => window.recording === index;
+    if (!groups.some(({ windows }) => windows.some(isHere))) continue;
     const recorded = signals.axes[axis] as AxisSignals;
-    const prepared = prepareAxis(signals, recorded, { ...protocol, filter });
-    for (const { place } of own) {
-      windowEndsMs.forEach((endMs, e) => {
-        const stack = stacks[e];
-        if (!stack) return;
-        const startMs = place.windowMs[0];
-        const span = windowSpan(
-          place.onset,
-          [startMs, endMs],
-          protocol.baseline_ms,
-          signals.rateHz,
-        );
-        const baseline = baselineOf(prepared, span);
-        const excluded =
-          endMs <= startMs ||
-          baseline === null ||
-          exclusionOf({
-            signals,
-            recorded,
-            prepared,
-            span,
-            nextOnset: place.nextOnset,
-            underWay: false,
-            otherMovement: false,
-            byHand: place.byHand,
-          }) !== null;
-        if (excluded || baseline === null) stacks[e] = null;
-        else stack.push(cutColumns(prepared, baseline, span.start, span.end, rig));
-      });
-    }
+    const suits = cutoffHz === null || cutoffHz < signals.rateHz / 2;
+    const prepared = suits ? prepareAxis(signals, recorded, { ...protocol, filter }) : null;
+    const cut = (place: Place, endMs: number): WindowColumns | null => {
+      const startMs = place.windowMs[0];
+      if (prepared === null || endMs <= startMs) return null;
+      const { rateHz } = signals;
+      const span = windowSpan(place.onset, [startMs, endMs], protocol.baseline_ms, rateHz);
+      const { nextOnset, byHand } = place;
+      const state = { nextOnset, byHand, underWay: false, otherMovement: false };
+      const baseline = baselineOf(prepared, span);
+      const excluded = exclusionOf({ signals, recorded, prepared, span, ...state });
+      if (excluded !== null || baseline === null) return null;
+      return cutColumns(prepared, baseline, span.start, span.end, rig);
+    };
+    groups.forEach(({ windows }, g) => {
+      for (const { place } of windows.filter(isHere)) {
+        windowEndsMs.forEach((endMs, e) => {
+          const ofGroup = stacks[g] as (WindowColumns[] | null)[];
+          const columns = ofGroup[e] && cut(place, endMs);
+          if (columns) ofGroup[e]?.push(columns);
+          else ofGroup[e] = null;
+        });
+      }
+    });
   }
-  return stacks.map((stack) => {
-    const fit = stack && fitModel(stackColumns(stack), model);
-    return fit?.status === "fitted" ? fit.parameters : null;
-  });
+  return stacks.map((ofGroup) =>
+    ofGroup.map((stack) => {
+      const fit = stack && fitModel(stackColumns(stack), model);
+      return fit?.status === "fitted" ? fit.parameters : null;
+    }),
+  );
 }
 
 // ---------------------------------------------------------------- small matters

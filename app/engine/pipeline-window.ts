@@ -23,7 +23,6 @@ import type {
   Impedance,
   ImpedanceModel,
   Movement,
-  Prepared,
   PreparedAxis,
   Protocol,
   ResultEmg,
@@ -66,30 +65,26 @@ export interface Bench {
 }
 
 export function benchOf(
-  prepared: Prepared,
+  signals: Signals,
+  prepared: PreparedAxis,
   protocol: Protocol,
   index: number,
   rig: Impedance,
 ): Bench {
-  const axis = protocol.axes[index] as AxisProtocol;
   const expected = expectedOf(protocol);
-  const columns = prepared.axes[index] as PreparedAxis;
+  const threshold = () => onsetThreshold(prepared.onsetVelocityRadPerS, expected);
   return {
     protocol,
-    axis,
-    signals: prepared.signals,
-    recorded: prepared.signals.axes[index] as AxisSignals,
-    prepared: columns,
+    axis: protocol.axes[index] as AxisProtocol,
+    signals,
+    recorded: signals.axes[index] as AxisSignals,
+    prepared,
     model: impedanceModel(protocol.model),
     rig,
     expected,
-    thresholdRadPerS: expected
-      ? onsetThreshold(columns.onsetVelocityRadPerS, expected)
-      : remembered(thresholds, columns, () => onsetThreshold(columns.onsetVelocityRadPerS, null)),
-    levels: remembered(emgLevels, prepared.signals, () =>
-      prepared.signals.emg.map(({ channel }) =>
-        movingLevel(channel.si, prepared.signals.segments, prepared.signals.rateHz),
-      ),
+    thresholdRadPerS: expected ? threshold() : remembered(thresholds, prepared, threshold),
+    levels: remembered(emgLevels, signals, () =>
+      signals.emg.map(({ channel }) => movingLevel(channel.si, signals.segments, signals.rateHz)),
     ),
   };
 }

@@ -24,6 +24,7 @@ import { prepareAxis } from "#app/engine/prepare/prepare-axis.ts";
 import type {
   Impedance,
   Prepared,
+  PreparedAxis,
   Protocol,
   Result,
   Signals,
@@ -33,6 +34,13 @@ import type {
 } from "#app/engine/types.ts";
 import { windowSpan } from "#app/engine/windows/window-span.ts";
 
+// What taking a file in asks before there is a protocol: what the file looks like, which column is
+// what, and the first movement in words.
+export type { FirstMovement } from "#app/engine/channels/first-movement.ts";
+export { firstMovement } from "#app/engine/channels/first-movement.ts";
+export type { ProposedChannel, ProposedMap } from "#app/engine/channels/propose.ts";
+export { proposeChannels } from "#app/engine/channels/propose.ts";
+export { previewTable } from "#app/engine/parse/preview.ts";
 export type { RecordingInput } from "#app/engine/pipeline-window.ts";
 
 /** Name and version that every result carries; the version changes whenever a number may. */
@@ -56,7 +64,7 @@ export function prepare(signals: Signals, protocol: Protocol): Prepared {
 /** Every perturbation that is found, also those that are excluded, by axis in protocol order, then onset. */
 export function findWindows(prepared: Prepared, protocol: Protocol): WindowChoice[] {
   return protocol.axes.flatMap((_, index) => {
-    const bench = benchOf(prepared, protocol, index, rigOf(protocol, index));
+    const bench = benchOnAxis(prepared, protocol, index);
     return foundPlaces(bench).map((place) => {
       const { fit, reason } = examine(bench, place);
       return {
@@ -102,6 +110,10 @@ export function viewWindow(
   return { window, trace: traceOf(bench, examined) };
 }
 
+function benchOnAxis({ signals, axes }: Prepared, protocol: Protocol, index: number): Bench {
+  return benchOf(signals, axes[index] as PreparedAxis, protocol, index, rigOf(protocol, index));
+}
+
 function placesOnAxis(
   prepared: Prepared,
   protocol: Protocol,
@@ -110,7 +122,7 @@ function placesOnAxis(
 ): { bench: Bench; places: Place[] } {
   const index = protocol.axes.findIndex((axis) => axis.name === name);
   if (index < 0) throw new RangeError(`The protocol has no axis ${name}.`);
-  const bench = benchOf(prepared, protocol, index, rigOf(protocol, index));
+  const bench = benchOnAxis(prepared, protocol, index);
   const places = chosenPlaces(
     bench,
     choices.filter(({ axis }) => axis === name),
@@ -176,9 +188,12 @@ function analyseRecording(
   rigs: readonly { rig: Impedance }[],
   windows: WindowsDocument | null,
 ): Analysed[] {
-  const prepared = prepare(signals, protocol);
-  return protocol.axes.flatMap((_, index) => {
-    const bench = benchOf(prepared, protocol, index, (rigs[index] as { rig: Impedance }).rig);
+  checkSpans(protocol, signals.rateHz);
+  // One axis after the other: the columns of all at once would not fit beside a large recording.
+  return signals.axes.flatMap((axis, index) => {
+    const prepared = prepareAxis(signals, axis, protocol);
+    const { rig } = rigs[index] as { rig: Impedance };
+    const bench = benchOf(signals, prepared, protocol, index, rig);
     return placesOf(bench, sha256, windows).map((place) => {
       const examined = examine(bench, place);
       return {
