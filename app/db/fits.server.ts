@@ -487,6 +487,7 @@ export async function listCurrentFits(
       asc(postures.position),
       asc(visits.day),
       asc(recordings.takenInAt),
+      asc(recordings.fileName),
     );
   return rows.map(({ place, summary, ...rest }) => ({ ...place, ...summary, ...rest }));
 }

@@ -233,6 +233,7 @@ export async function listRecordings(
       asc(postures.position),
       asc(visits.day),
       asc(recordings.takenInAt),
+      asc(recordings.fileName),
     );
   return rows.map(({ place, channelMap, facts, ...rest }) => ({
     ...place,
