@@ -48,7 +48,7 @@ export function firstMovement(
     for (let from = start + before; from < end; from += block) {
       const level = medianOf(angle.subarray(from - before, from));
       for (let i = from; i < Math.min(from + block, end); i++) {
-        if (Math.abs((angle[i] as number) - level) <= EXCURSION_SHARE * range) continue;
+        if (!(Math.abs((angle[i] as number) - level) > EXCURSION_SHARE * range)) continue;
         const stop = Math.min(end, i + span(FOLLOWED_S));
         const sign = Math.sign((angle[i] as number) - level);
         let peak = 0;

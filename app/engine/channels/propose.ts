@@ -42,7 +42,7 @@ interface Column {
 const words = (list: string): Set<string> => new Set(list.split(" "));
 const TIME = words("t time times timestamp timestamps zeit temps tijd tiempo tempo clock");
 const ANGLE = words(
-  "a ang angle angles theta θ th phi φ q pos position rot rotation winkel hoek deg rad enc encoder",
+  "a ang angle angles theta θ th phi φ q pos position rot rotation winkel hoek deg rad enc encoder gonio goniometer electrogoniometer",
 );
 const TORQUE = words("trq tq torque torques moment mom m tau τ drehmoment koppel nm");
 const LIMB = words("limb gonio goniometer electrogoniometer hand foot segment skin marker");
