@@ -1,9 +1,12 @@
 import type {
+  FileHead,
+  FileReading,
   OpenedRecording,
   Protocol,
   Result,
   Stretch,
   StretchRequest,
+  TableProtocol,
   ViewAllRequest,
   ViewRequest,
   WindowDrawing,
@@ -31,6 +34,14 @@ export interface EngineApi {
   analyze(windows: WindowsDocument): Result;
   /** SHA-256 of a file, read in pieces. */
   hash(file: Blob, onProgress: (bytesRead: number) => void): Promise<string>;
+  /** A glance at a file that is not taken in yet. */
+  lookAtHead(
+    file: Blob,
+    table: TableProtocol,
+    axes: readonly { name: string; label: string }[],
+  ): Promise<FileHead>;
+  /** A whole file, read with a map before it is taken in. */
+  readWhole(file: Blob, protocol: Protocol): Promise<FileReading>;
 }
 
 export interface RecordingSource {

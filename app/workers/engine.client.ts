@@ -1,9 +1,13 @@
 import { proxy, type Remote, transfer, wrap } from "comlink";
 import type {
+  FileHead,
+  FileReading,
   OpenedRecording,
+  Protocol,
   Result,
   Stretch,
   StretchRequest,
+  TableProtocol,
   ViewAllRequest,
   ViewRequest,
   WindowDrawing,
@@ -86,6 +90,50 @@ export class EngineClient {
 
   #ask<Answer>(seat: Seat, answer: Promise<Answer>): Promise<Answer> {
     return Promise.race([answer, seat.broken]);
+  }
+}
+
+/**
+ * Reads files that are not taken in yet, in a worker of its own. One that dies (a file may be larger
+ * than the memory) is replaced at the next call.
+ */
+export class IncomingFiles {
+  #seat: Seat | null = null;
+
+  hash(file: Blob, onProgress: (bytesRead: number) => void): Promise<string> {
+    return this.#ask((api) => api.hash(file, proxy(onProgress)));
+  }
+
+  lookAtHead(
+    file: Blob,
+    table: TableProtocol,
+    axes: readonly { name: string; label: string }[],
+  ): Promise<FileHead> {
+    return this.#ask(async (api) => api.lookAtHead(file, table, axes));
+  }
+
+  readWhole(file: Blob, protocol: Protocol): Promise<FileReading> {
+    return this.#ask(async (api) => api.readWhole(file, protocol));
+  }
+
+  close(): void {
+    this.#seat?.worker.terminate();
+    this.#seat?.fail(problem("closed", "The page was left."));
+    this.#seat = null;
+  }
+
+  async #ask<Answer>(ask: (api: Remote<EngineApi>) => Promise<Answer>): Promise<Answer> {
+    this.#seat ??= takeSeat();
+    const seat = this.#seat;
+    try {
+      return await Promise.race([ask(seat.api), seat.broken]);
+    } catch (error) {
+      if (error instanceof Error && error.name === "stopped") {
+        seat.worker.terminate();
+        if (this.#seat === seat) this.#seat = null;
+      }
+      throw error;
+    }
   }
 }
 

@@ -17,6 +17,7 @@ import type {
   WindowDrawing,
 } from "#app/engine/types.ts";
 import type { EngineApi, EngineProblemCode, RecordingSource } from "./engine.api.ts";
+import { lookAtHead, readWhole } from "./incoming-file.ts";
 import { firstAtOrAfter, nearestSample, thinColumns, withoutMissingStamps } from "./thin.ts";
 
 const DEG_PER_RAD = 180 / Math.PI;
@@ -170,6 +171,9 @@ const api: EngineApi = {
     }
     return hasher.digest();
   },
+
+  lookAtHead,
+  readWhole,
 };
 
 expose(api);
