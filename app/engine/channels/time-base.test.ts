@@ -33,6 +33,12 @@ describe("stampedTimeBase", () => {
     expect(Math.abs(baseOf(numpy.cases.fine.stamps_ms).rateHz - 1500)).toBeLessThan(1);
   });
 
+  it("gives a round rate to the last bit, however many steps there are", () => {
+    for (const count of [5791, 5793, 999]) {
+      expect(baseOf(steps(...Array<number>(count).fill(1))).rateHz).toBe(1000);
+    }
+  });
+
   it("keeps the file's own time and its unit", () => {
     const base = baseOf([5000000, 5000500, 5001000, 5001500], "us");
     expect(base.timeS[0]).toBe(5);
