@@ -92,7 +92,7 @@ export function OverviewStrip({
           ? `Window ${words.number} of ${windows.length}, ${words.words}, at ${words.onsetS.toFixed(2)} s`
           : "No window"
       }
-      className="relative cursor-pointer border border-rule"
+      className="relative min-w-0 cursor-pointer overflow-hidden border border-rule"
       onClick={chooseAt}
       onKeyDown={chooseByKey}
       ref={box}

@@ -19,6 +19,10 @@ export function ShareBar({ share }: { share: Record<Term, number | null> }) {
     x += part.wide + GAP;
     return part;
   });
+  const labels = labelPlaces(
+    parts.map((part) => part.x),
+    width,
+  );
   return (
     <div ref={box}>
       <svg aria-hidden="true" className="block" height={HEIGHT} width={width}>
@@ -38,14 +42,11 @@ export function ShareBar({ share }: { share: Record<Term, number | null> }) {
         ))}
       </svg>
       <div className="relative mt-0.5 h-4 text-sm font-semibold">
-        {parts.map(({ term, x: left }, i) => (
+        {parts.map(({ term }, i) => (
           <span
             className="absolute whitespace-nowrap"
             key={term}
-            style={{
-              left: Math.min(left, width - 48 * (parts.length - i)),
-              color: `var(--${term})`,
-            }}
+            style={{ left: labels[i], color: `var(--${term})` }}
           >
             {term} {Math.round(100 * (share[term] ?? 0))} %
           </span>
@@ -53,6 +54,21 @@ export function ShareBar({ share }: { share: Record<Term, number | null> }) {
       </div>
     </div>
   );
+}
+
+const LABEL_PX = 54;
+
+/** Each label below its part, none over another, none over the end. */
+export function labelPlaces(lefts: readonly number[], width: number): number[] {
+  const places = [...lefts];
+  for (let i = 1; i < places.length; i++) {
+    places[i] = Math.max(places[i] as number, (places[i - 1] as number) + LABEL_PX);
+  }
+  for (let i = places.length - 1; i >= 0; i--) {
+    const most = i === places.length - 1 ? width : (places[i + 1] as number);
+    places[i] = Math.min(places[i] as number, most - LABEL_PX);
+  }
+  return places;
 }
 
 /** K is solid, B is broken, I is dotted: the same as their lines. */

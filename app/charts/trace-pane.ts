@@ -34,7 +34,7 @@ const MODEL_PX = 4;
 const MODEL_STRENGTH = 0.75;
 const DOT_RADIUS_PX = 1.7;
 /** Dots nearer than this run together: a line shows more. */
-const CLOSEST_DOTS_PX = 2.5;
+const CLOSEST_DOTS_PX = 1.5;
 const ZERO: [number, number] = [0, 0];
 
 /** One canvas of a stack of traces. The gutter for tick labels is at its left. */

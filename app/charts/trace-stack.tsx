@@ -40,7 +40,7 @@ export interface TraceStackHandle {
   point(atS: number | null): void;
 }
 
-const GUTTER_PX = 92;
+const GUTTER_PX = 100;
 const NARROW_GUTTER_PX = 46;
 const NARROW_PX = 560;
 /** A press that moves less than this is a click. */
@@ -56,7 +56,8 @@ export function TraceStack({
   range: { fromS, toS },
   originS,
   label,
-  dimmed = false,
+  aside = false,
+  grips = true,
   onCursor,
   onClick,
   onPan,
@@ -70,8 +71,10 @@ export function TraceStack({
   originS: number | null;
   /** What a screen reader says of the picture. */
   label: string;
-  /** What is shown belongs to an earlier range and is about to be drawn anew. */
-  dimmed?: boolean;
+  /** The chosen window is set aside: hatched. */
+  aside?: boolean;
+  /** Whether the chosen window is wide enough for its edges to be taken hold of. */
+  grips?: boolean;
   /** Where the cursor is, in the file's own time; null where it is nowhere. */
   onCursor: (atS: number | null) => void;
   onClick: (atS: number) => void;
@@ -238,7 +241,7 @@ export function TraceStack({
   return (
     <div className="flex min-h-0 flex-1 flex-col" ref={root}>
       <div
-        className={`relative grid min-h-0 flex-1 gap-2 ${dimmed ? "opacity-60" : ""}`}
+        className="relative grid min-h-0 flex-1 gap-2"
         style={{
           gridTemplateRows: panes.map((pane) => `minmax(80px, ${pane.weight}fr)`).join(" "),
         }}
@@ -249,7 +252,7 @@ export function TraceStack({
               className="absolute inset-y-0 right-0 overflow-hidden border border-rule"
               style={{ left: gutterPx }}
             >
-              <ChosenWindow baseline={!pane.symmetric} />
+              <ChosenWindow aside={aside} baseline={!pane.symmetric} />
             </div>
             <div
               aria-hidden="true"
@@ -280,7 +283,7 @@ export function TraceStack({
               className="pointer-events-none absolute inset-y-0 right-0 overflow-hidden"
               style={{ left: gutterPx }}
             >
-              <ChosenLines grips={!pane.symmetric} />
+              <ChosenLines grips={grips && !pane.symmetric} />
             </div>
           </div>
         ))}
@@ -329,12 +332,18 @@ function drawAll(
 }
 
 /** Shading and baseline, beneath the lines. */
-function ChosenWindow({ baseline }: { baseline: boolean }) {
+function ChosenWindow({ baseline, aside }: { baseline: boolean; aside: boolean }) {
   return (
     <>
       <div
-        className="absolute inset-y-0 bg-hover"
-        style={{ left: "var(--start, -200%)", right: "calc(100% - var(--end, -200%))" }}
+        className={`absolute inset-y-0 ${aside ? "opacity-50" : "bg-hover"}`}
+        style={{
+          left: "var(--start, -200%)",
+          right: "calc(100% - var(--end, -200%))",
+          backgroundImage: aside
+            ? "repeating-linear-gradient(135deg, var(--aside) 0 1px, transparent 1px 6px)"
+            : undefined,
+        }}
       />
       {baseline ? (
         <div
@@ -392,7 +401,7 @@ function TimeAxis({
     <div className="relative h-10 shrink-0 text-sm text-ink-2" style={{ marginLeft: gutterPx }}>
       {ticks.map((tick, i) => (
         <span
-          className="absolute top-1 -translate-x-1/2 font-mono"
+          className="absolute top-1 -translate-x-1/2 font-mono whitespace-nowrap"
           key={tick}
           style={{ left: `${((tick - low) / (high - low)) * 100}%` }}
         >

@@ -114,7 +114,7 @@ function EdgeSlider({
       aria-valuemin={edge === "start" ? -10_000 : windowMs[0] + sampleMs}
       aria-valuenow={ms}
       aria-valuetext={`${ms} ms after onset`}
-      className={`group pointer-events-auto absolute inset-y-0 w-7 cursor-ew-resize touch-none ${
+      className={`group pointer-events-auto absolute inset-y-0 w-7 cursor-ew-resize touch-none outline-none ${
         edge === "start" ? "-translate-x-[22px]" : "-translate-x-[6px]"
       }`}
       data-edge={edge}
@@ -138,6 +138,11 @@ function EdgeSlider({
       style={{ left: `var(--${edge}, -200%)` }}
       tabIndex={0}
     >
+      <span
+        className={`pointer-events-none absolute inset-y-0 hidden w-[3px] -translate-x-px bg-focus group-focus-visible:block ${
+          edge === "start" ? "left-[22px]" : "left-[6px]"
+        }`}
+      />
       <span
         className={`pointer-events-none absolute top-0 hidden bg-ink px-1 font-mono text-sm whitespace-nowrap text-paper group-focus:block group-active:block ${
           edge === "start" ? "right-[6px]" : "left-[6px]"

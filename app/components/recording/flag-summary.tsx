@@ -7,7 +7,7 @@ export function FlagSummary({ flags }: { flags: readonly Flag[] }) {
   const [first, ...rest] = once;
   if (!first) return null;
   return (
-    <div className="mb-2">
+    <div className="-mt-2 mb-2">
       <FlagList flags={[first]} />
       {rest.length > 0 ? (
         <details>

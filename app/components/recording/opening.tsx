@@ -36,9 +36,9 @@ export function Opening({
           style={{ width: `${Math.round(share * 100)}%` }}
         />
       </div>
-      <div className="h-[34px] border border-rule md:ml-[92px]" />
+      <div className="h-[34px] border border-rule md:ml-[100px]" />
       {["Angle", "Velocity", "Torque", "Residual"].map((title) => (
-        <div className="grid flex-1 md:grid-cols-[92px_1fr]" key={title}>
+        <div className="grid flex-1 md:grid-cols-[100px_1fr]" key={title}>
           <span className="hidden text-sm text-ink-2 md:block">{title}</span>
           <div className="min-h-20 border border-rule" />
         </div>

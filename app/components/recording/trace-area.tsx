@@ -18,7 +18,11 @@ export interface TraceAreaHandle {
 export interface ChosenWindow {
   onsetS: number;
   windowMs: readonly [number, number];
+  aside: boolean;
 }
+
+/** Narrower than this share of the view, a window's edges cannot be taken hold of. */
+const LEAST_GRIP_SHARE = 0.03;
 
 const FIXED_PANES: readonly StackPane[] = [
   { key: "angle", title: "Angle", unit: "°", weight: 1 },
@@ -146,6 +150,11 @@ export function TraceArea({
   // biome-ignore lint/correctness/useExhaustiveDependencies: the marks are shares of the range that is shown.
   useLayoutEffect(() => stack.current?.mark(marks), [marks, range]);
 
+  const widthShare =
+    chosen === null
+      ? 0
+      : (chosen.windowMs[1] - chosen.windowMs[0]) / 1000 / (range.toS - range.fromS);
+
   const newest = useRef(draw);
   newest.current = draw;
   // biome-ignore lint/correctness/useExhaustiveDependencies: drawn anew when any part of the picture changes; a drag draws by itself.
@@ -163,6 +172,8 @@ export function TraceArea({
   return (
     <div className="flex min-h-0 flex-1 flex-col" ref={area}>
       <TraceStack
+        aside={chosen?.aside ?? false}
+        grips={canEdit && widthShare > LEAST_GRIP_SHARE}
         label={label}
         onClick={onClick}
         onCursor={onCursor}

@@ -1,6 +1,5 @@
 import type { ReactNode } from "react";
 import { ShareBar } from "#app/charts/share-bar.tsx";
-import { FigureNumber } from "#app/components/figure-number.tsx";
 import { FlagNote } from "#app/components/flag.tsx";
 import { TermRow } from "#app/components/term-row.tsx";
 import { countOf, formatDigits, formatFull, formatNumber } from "#app/domain/quantity.ts";
@@ -15,6 +14,7 @@ export function WindowDrawer({
   share,
   pooled,
   isPooling,
+  flagsAbove,
   level,
   actions,
   children,
@@ -28,13 +28,15 @@ export function WindowDrawer({
   pooled: ResultPooled | null;
   /** The pooled values are of an earlier state and on their way. */
   isPooling: boolean;
+  /** Codes of flags that the page says already, once for all windows. */
+  flagsAbove: ReadonlySet<string>;
   /** Of the interval, 0.95. */
   level: number;
   actions: ReactNode;
   children?: ReactNode;
 }) {
   const reason = window?.reason ? reasonInWords(window.reason) : null;
-  const percent = formatDigits(100 * level, 3);
+  const percent = Number((100 * level).toFixed(1));
   return (
     <>
       <h2 className="mb-1">
@@ -42,13 +44,31 @@ export function WindowDrawer({
         {window?.direction ? `, towards ${window.direction}` : ""}
       </h2>
       <p className="text-sm text-ink-2">
-        onset <span className="font-mono">{window ? formatNumber(window.onset_s, 3) : "–"} s</span>,
-        trimmed to <span className="font-mono">{window ? spanInWords(window.window_ms) : "–"}</span>
+        onset <span className="font-mono">{window ? formatNumber(window.onset_s, 3) : "–"} s</span>
+        {window?.amplitude_deg != null ? (
+          <>
+            , moved{" "}
+            <span className="font-mono" title={`${formatFull(window.amplitude_deg)}°`}>
+              {formatDigits(window.amplitude_deg, 2)}°
+            </span>
+            {window.duration_ms === null ? null : (
+              <>
+                {" in "}
+                <span className="font-mono">{formatNumber(window.duration_ms, 0)} ms</span>
+              </>
+            )}
+          </>
+        ) : null}
+        , trimmed to{" "}
+        <span className="font-mono">{window ? spanInWords(window.window_ms) : "–"}</span>
         {isByHand ? ", added by hand" : ""}
       </p>
       {reason ? <FlagNote text={reason.text} todo={reason.todo ?? undefined} /> : null}
       <div className="my-2">
-        <table className={`rows ${isPooling ? "pooling" : ""}`}>
+        <table
+          aria-busy={isPooling}
+          className="rows [&_:is(th,td)]:pr-0 [&_td]:pl-3 [&[aria-busy=true]_td:last-child]:opacity-60"
+        >
           <thead>
             <tr>
               <th>
@@ -103,17 +123,6 @@ export function WindowDrawer({
               one={formatDigits(window?.background_torque, 2)}
               unit="N·m"
             />
-            <tr>
-              <th scope="row">
-                Movement <span className="unit">° in ms</span>
-              </th>
-              <td className="r num">
-                <FigureNumber value={window?.amplitude_deg ?? null} />
-                {" in "}
-                <FigureNumber decimals={0} value={window?.duration_ms ?? null} />
-              </td>
-              <td />
-            </tr>
           </tbody>
         </table>
         <p className="mt-1 text-sm text-ink-2">
@@ -126,7 +135,7 @@ export function WindowDrawer({
           <ShareBar share={share} />
         </div>
       ) : null}
-      <FlagList flags={window?.flags ?? []} />
+      <FlagList flags={window?.flags.filter(({ code }) => !flagsAbove.has(code)) ?? []} />
       {children}
       <div className="mt-auto flex flex-wrap gap-2 pt-3">{actions}</div>
     </>

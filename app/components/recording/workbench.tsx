@@ -325,13 +325,44 @@ export function Workbench({
     fits.lastResult?.pooled.find(
       (each) => each.axis === axis && each.direction === shown?.window.direction,
     ) ?? null;
+  const commonFlags = useMemo(
+    () => [
+      ...opened.flags,
+      ...(fits.lastResult?.pooled ?? [])
+        .filter((each) => each.axis === axis)
+        .flatMap((each) => each.flags),
+    ],
+    [opened, fits.lastResult, axis],
+  );
+  const flagsAbove = useMemo(() => new Set(commonFlags.map(({ code }) => code)), [commonFlags]);
+  const isAside = chosen !== null && !chosen.included;
   const marks = useMemo(
-    () => (onsetS === null || windowMs === null ? null : { onsetS, windowMs }),
-    [onsetS, windowMs],
+    () => (onsetS === null || windowMs === null ? null : { onsetS, windowMs, aside: isAside }),
+    [onsetS, windowMs, isAside],
   );
   const setAsideCount = ofAxis.filter((window) => !window.included).length;
   const toUndo = edits.list === null ? null : editToUndo(edits.list);
   const toRedo = edits.list === null ? null : editToRedo(edits.list);
+
+  const foot = (
+    <>
+      <button
+        className="min-h-6 underline decoration-edge underline-offset-3"
+        onClick={() => setAsTable(!asTable)}
+        type="button"
+      >
+        {asTable ? "Hide the table" : "Show as table"}
+      </button>
+      <button
+        aria-keyshortcuts="?"
+        className="min-h-6 underline decoration-edge underline-offset-3"
+        onClick={() => setDialog("keys")}
+        type="button"
+      >
+        Keys
+      </button>
+    </>
+  );
 
   return (
     <div className="grid min-h-dvh xl:grid-cols-[minmax(0,1fr)_312px] lg:grid-cols-[minmax(0,1fr)_288px]">
@@ -358,18 +389,14 @@ export function Workbench({
             theirs={theirs}
           />
         ) : null}
-        <FlagSummary
-          flags={[
-            ...opened.flags,
-            ...(fits.lastResult?.pooled ?? [])
-              .filter((each) => each.axis === axis)
-              .flatMap((each) => each.flags),
-          ]}
-        />
+        <FlagSummary flags={commonFlags} />
         {ofAxis.length === 0 ? (
           <Empty text="No perturbation was found on this axis. Check the angle’s unit and the expected movement in the protocol, or add a window by hand." />
         ) : null}
-        <div className="mb-1.5 grid items-center md:grid-cols-[92px_minmax(0,1fr)]" ref={box}>
+        <div
+          className="mb-1.5 grid grid-cols-[minmax(0,1fr)] items-center md:grid-cols-[100px_minmax(0,1fr)]"
+          ref={box}
+        >
           <p className="flex gap-2 text-sm md:block">
             All <span className="font-mono">{formatNumber(whole.toS - whole.fromS, 0)} s</span>
             <span className="font-mono text-ink-2 md:block">
@@ -448,7 +475,11 @@ export function Workbench({
               </ZoomButton>
             )}
           </fieldset>
+          <div className="absolute bottom-0 left-[104px] hidden gap-2 text-sm text-ink-2 sm:flex">
+            {foot}
+          </div>
         </div>
+        <div className="flex gap-2 text-sm text-ink-2 sm:hidden">{foot}</div>
         <div className="my-3 flex flex-wrap items-center gap-2">
           <Button
             disabled={chosenIndex <= 0}
@@ -487,18 +518,6 @@ export function Workbench({
               </Button>
             </>
           ) : null}
-          <Button look="quiet" onClick={() => setAsTable(!asTable)} type="button">
-            {asTable ? "Hide the table" : "Show as table"}
-          </Button>
-          <Button
-            aria-label="Keys on this page"
-            keyHint="?"
-            look="quiet"
-            onClick={() => setDialog("keys")}
-            type="button"
-          >
-            Keys
-          </Button>
           {canEdit ? (
             <div className="ml-auto flex flex-wrap gap-2">
               <Button
@@ -540,7 +559,7 @@ export function Workbench({
         aria-label="The chosen window"
         className="flex flex-col border-t border-rule bg-sheet p-4 lg:border-t-0 lg:border-l"
       >
-        <div className="flex min-h-0 flex-1 flex-col lg:sticky lg:top-4 lg:max-h-[calc(100dvh-2rem)]">
+        <div className="flex min-h-0 flex-1 flex-col lg:sticky lg:top-4 lg:max-h-[calc(100dvh-2rem)] lg:overflow-y-auto">
           {chosen === null ? (
             <p className="text-ink-2">Numbers of a window stand here once there is one.</p>
           ) : (
@@ -566,6 +585,7 @@ export function Workbench({
                   </>
                 ) : null
               }
+              flagsAbove={flagsAbove}
               isByHand={chosen.origin === "by_hand"}
               isPooling={fits.result === null}
               level={protocol.uncertainty.level}

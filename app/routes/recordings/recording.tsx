@@ -466,9 +466,9 @@ function RecordingHead({
           {recording.fileName}
         </a>,
         formatDayOfVisit(shown.day),
-        <span className="inline-flex items-center gap-1.5" key="state">
+        <span className="flex items-center" key="state">
           <StateMark state={state} word />
-          {unsaved > 0 ? <span>, {countOf(unsaved, "edit")} not saved</span> : null}
+          {unsaved > 0 ? `, ${countOf(unsaved, "edit")} not saved` : null}
         </span>,
         ...(current?.verification === "unverified"
           ? [
