@@ -21,10 +21,11 @@ import {
   writeFileSync,
 } from "node:fs";
 import { dirname } from "node:path";
+import { fileURLToPath } from "node:url";
 import { ProtocolError, parseProtocol } from "#app/domain/protocol.ts";
 import { parseWindows, WindowsError } from "#app/domain/window.ts";
 import { EngineError } from "#app/engine/errors.ts";
-import { analyze, type RecordingInput, readRecording } from "#app/engine/pipeline.ts";
+import type { RecordingInput } from "#app/engine/pipeline.ts";
 import type { Protocol, Result, WindowsDocument } from "#app/engine/types.ts";
 
 /** Larger recordings are refused before they are read: they would not fit into 1 GB on the way. */
@@ -234,8 +235,11 @@ function atLine(file: string, line: number | null): string {
   return line === null ? file : `${file}:${line}`;
 }
 
+type Engine = typeof import("#app/engine/pipeline.ts");
+
 /** Reads recordings one after the other; `seen` holds the names of all files by their hash. */
 function readRecordings(
+  engine: Engine,
   files: readonly string[],
   protocol: Protocol,
   seen: Map<string, string>,
@@ -253,7 +257,7 @@ function readRecordings(
     }
     seen.set(hash, file);
     try {
-      return { file, sha256: hash, signals: readRecording(bytes, protocol) };
+      return { file, sha256: hash, signals: engine.readRecording(bytes, protocol) };
     } catch (error) {
       throw refusalOf(error, file);
     }
@@ -322,7 +326,9 @@ function writeOut(out: string, text: string): void {
 
 // ---------------------------------------------------------------- the command
 
-function run(given: readonly string[]): { result: Result; out: string | null } {
+async function analyzeFiles(
+  given: readonly string[],
+): Promise<{ result: Result; out: string | null }> {
   const files = readArguments(given);
   const { protocol, sha256: protocolSha256 } = readProtocolFile(files.protocol);
   const windows = files.windows === null ? null : readWindowsFile(files.windows, protocol);
@@ -331,9 +337,11 @@ function run(given: readonly string[]): { result: Result; out: string | null } {
     checkOut(files.out, [...files.recordings, ...files.rig, ...documents]);
   }
 
+  // Loaded only now: a wrong call or protocol is refused without waiting for the engine.
+  const engine = await import("#app/engine/pipeline.ts");
   const seen = new Map<string, string>();
-  const recordings = readRecordings(files.recordings, protocol, seen);
-  const rig = readRecordings(files.rig, protocol, seen);
+  const recordings = readRecordings(engine, files.recordings, protocol, seen);
+  const rig = readRecordings(engine, files.rig, protocol, seen);
   if (files.windows !== null && windows !== null) {
     const hashes = recordings.map((recording) => recording.sha256);
     if (!windows.windows.some((window) => hashes.includes(window.recording_sha256))) {
@@ -341,43 +349,56 @@ function run(given: readonly string[]): { result: Result; out: string | null } {
     }
   }
   try {
-    const result = analyze({ protocol, protocolSha256, recordings, rig, windows });
+    const result = engine.analyze({ protocol, protocolSha256, recordings, rig, windows });
     return { result, out: files.out };
   } catch (error) {
     throw refusalOf(error, files.recordings[0] ?? "");
   }
 }
 
+export interface Answer {
+  exit: 0 | 2 | 3;
+  /** The document; empty where it went to FILE or nothing was analysed. */
+  stdout: string;
+  /** Whole lines; where the exit is not 0 the last one is the reason. */
+  stderr: string;
+}
+
+/** The whole command but for its streams: reads the files that are named, and writes FILE. */
+export async function answer(given: readonly string[]): Promise<Answer> {
+  try {
+    const { result, out } = await analyzeFiles(given);
+    const text = `${JSON.stringify(result)}\n`;
+    if (out !== null) writeOut(out, text);
+    const warnings = result.recordings.flatMap(({ file, flags }) =>
+      flags.map((flag) => line(file, flag.text)),
+    );
+    return { exit: 0, stdout: out === null ? text : "", stderr: warnings.join("") };
+  } catch (error) {
+    if (error instanceof Refusal) {
+      return { exit: error.exit, stdout: "", stderr: line(error.blamed, error.message) };
+    }
+    const reason = error instanceof Error ? error.message : String(error);
+    return { exit: 3, stdout: "", stderr: line("engine", `The analysis stopped: ${reason}.`) };
+  }
+}
+
+function line(name: string, sentence: string): string {
+  return `analyze: ${oneLine(name)}: ${oneLine(sentence)}\n`;
+}
+
 function oneLine(text: string): string {
   return text.replace(/\s*[\r\n\u2028\u2029]+\s*/g, " ");
 }
 
-function say(name: string, sentence: string): void {
-  process.stderr.write(`analyze: ${oneLine(name)}: ${oneLine(sentence)}\n`);
-}
-
-try {
-  const { result, out } = run(process.argv.slice(2));
-  const text = `${JSON.stringify(result)}\n`;
-  if (out === null) {
-    // A reader that has seen enough (`| head`) closes the pipe; that is no failure of the analysis.
-    process.stdout.on("error", () => process.exit(0));
-    process.stdout.write(text);
-  } else {
-    writeOut(out, text);
-  }
-  for (const recording of result.recordings) {
-    for (const flag of recording.flags) say(recording.file, flag.text);
-  }
-} catch (error) {
-  if (error instanceof Refusal) {
-    say(error.blamed, error.message);
-    process.exitCode = error.exit;
-  } else {
-    say(
-      "engine",
-      `The analysis stopped: ${error instanceof Error ? error.message : String(error)}`,
-    );
-    process.exitCode = 3;
-  }
+if (
+  process.argv[1] !== undefined &&
+  realpathSync(process.argv[1]) === fileURLToPath(import.meta.url)
+) {
+  const { exit, stdout, stderr } = await answer(process.argv.slice(2));
+  process.exitCode = exit;
+  // A reader that has seen enough (`| head`) closes the pipe; that is no failure of the analysis.
+  process.stdout.on("error", () => process.exit(exit));
+  process.stdout.write(stdout);
+  process.stderr.write(stderr);
 }

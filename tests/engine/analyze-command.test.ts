@@ -13,6 +13,7 @@ import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
 import type { Result } from "#app/engine/types.ts";
+import { answer } from "../../scripts/analyze.ts";
 
 /*
  * The headless command as others call it: exits, standard output, the last line of standard error.
@@ -57,12 +58,12 @@ function file(name: string, content: string | Buffer): string {
   return path;
 }
 
-function refusal(args: string[], exit: 2 | 3, input = ""): string {
-  const ran = command(args, input);
-  expect(ran.last).toMatch(/^analyze: .+: .+[.]$/);
-  expect(ran.stderr).not.toMatch(/\n\s+at |node:internal|\.ts:\d+:\d+/);
-  expect({ exit: ran.exit, stdout: ran.stdout }).toEqual({ exit, stdout: "" });
-  return ran.last;
+/** The command without a process of its own, for the many ways to be refused. */
+async function refusal(args: string[], exit: 2 | 3): Promise<string> {
+  const given = await answer(args);
+  expect({ exit: given.exit, stdout: given.stdout }).toEqual({ exit, stdout: "" });
+  expect(given.stderr).toMatch(/^analyze: .+: .+[.]\n$/);
+  return given.stderr.trimEnd();
 }
 
 const protocol = () => JSON.parse(readFileSync(PROTOCOL, "utf8")) as Record<string, unknown>;
@@ -104,8 +105,8 @@ describe("the headless command", { timeout: PATIENCE_MS * 3 }, () => {
     expect(readdirSync(folder).filter((name) => name.endsWith(".part"))).toEqual([]);
   });
 
-  it("makes again what was made by hand, from the exported windows", () => {
-    const found = JSON.parse(command([SECOND, "--protocol", PROTOCOL]).stdout) as Result;
+  it("makes again what was made by hand, from the exported windows", async () => {
+    const found = JSON.parse((await answer([SECOND, "--protocol", PROTOCOL])).stdout) as Result;
     const sha = found.recordings[0]?.sha256;
     const windows = file(
       "windows.json",
@@ -122,51 +123,57 @@ describe("the headless command", { timeout: PATIENCE_MS * 3 }, () => {
       }),
     );
     const byHand = JSON.parse(
-      command([SECOND, "--windows", windows, "--protocol", PROTOCOL]).stdout,
+      (await answer([SECOND, "--windows", windows, "--protocol", PROTOCOL])).stdout,
     ) as Result;
     expect(byHand).toEqual(found);
   });
 
-  it("ends with 2 where the call is wrong", () => {
-    expect(refusal([], 2)).toMatch(/^analyze: --protocol: /);
-    expect(refusal(["--protocol", PROTOCOL], 2)).toMatch(/^analyze: RECORDING: /);
-    expect(refusal([FIRST, "--protocol"], 2)).toMatch(/^analyze: --protocol: /);
-    expect(refusal([FIRST, "--protocol", PROTOCOL, "--fast"], 2)).toMatch(/^analyze: --fast: /);
-    expect(refusal([FIRST, "--protocol", PROTOCOL, "--rig"], 2)).toMatch(/^analyze: --rig: /);
-    expect(refusal(["-", "-", "--protocol", PROTOCOL], 2)).toMatch(/^analyze: -: /);
+  it("ends with 2 where the call is wrong", async () => {
+    expect(await refusal([], 2)).toMatch(/^analyze: --protocol: /);
+    expect(await refusal(["--protocol", PROTOCOL], 2)).toMatch(/^analyze: RECORDING: /);
+    expect(await refusal([FIRST, "--protocol"], 2)).toMatch(/^analyze: --protocol: /);
+    expect(await refusal([FIRST, "--protocol", PROTOCOL, "--fast"], 2)).toMatch(
+      /^analyze: --fast: /,
+    );
+    expect(await refusal([FIRST, "--protocol", PROTOCOL, "--rig"], 2)).toMatch(/^analyze: --rig: /);
+    expect(await refusal(["-", "-", "--protocol", PROTOCOL], 2)).toMatch(/^analyze: -: /);
   });
 
-  it("ends with 2 and names the protocol's file and line, or its field", () => {
+  it("ends with 2 and names the protocol's file and line, or its field", async () => {
     const missing = join(folder, "none.json");
-    expect(refusal([FIRST, "--protocol", missing], 2)).toBe(
+    expect(await refusal([FIRST, "--protocol", missing], 2)).toBe(
       `analyze: ${missing}: There is no such file.`,
     );
     const twice = file("twice.json", '{\n"version": 1,\n"version": 1\n}');
-    expect(refusal([FIRST, "--protocol", twice], 2)).toMatch(`analyze: ${twice}:3: Line 3`);
+    expect(await refusal([FIRST, "--protocol", twice], 2)).toMatch(`analyze: ${twice}:3: Line 3`);
     const unit = changed("unit.json", { time: { column: "t", unit: "minutes" } });
-    expect(refusal([FIRST, "--protocol", unit], 2)).toMatch(/^analyze: time\.unit: "minutes"/);
+    expect(await refusal([FIRST, "--protocol", unit], 2)).toMatch(
+      /^analyze: time\.unit: "minutes"/,
+    );
     const sweep = file("sweep.json", '{"version":1,"kind":"sweep"}');
-    expect(refusal([FIRST, "--protocol", sweep], 2)).toMatch(/^analyze: kind: /);
+    expect(await refusal([FIRST, "--protocol", sweep], 2)).toMatch(/^analyze: kind: /);
     const large = file("large.json", `"${"x".repeat(2 * 1024 * 1024)}"`);
-    expect(refusal([FIRST, "--protocol", large], 2)).toContain(`analyze: ${large}: `);
+    expect(await refusal([FIRST, "--protocol", large], 2)).toContain(`analyze: ${large}: `);
   });
 
-  it("ends with 2 where a protocol does not suit the rate that a file turns out to have", () => {
+  it("ends with 2 where a protocol does not suit the rate that a file turns out to have", async () => {
     const high = changed("high.json", {
       filter: { family: "butterworth", order: 2, cutoff_hz: 500 },
     });
-    expect(refusal([SECOND, "--protocol", high], 2)).toMatch(/^analyze: filter\.cutoff_hz: /);
+    expect(await refusal([SECOND, "--protocol", high], 2)).toMatch(/^analyze: filter\.cutoff_hz: /);
     const short = changed("short.json", { window_ms: [0, 4], robustness: undefined });
-    expect(refusal([SECOND, "--protocol", short], 2)).toMatch(/^analyze: window_ms: /);
+    expect(await refusal([SECOND, "--protocol", short], 2)).toMatch(/^analyze: window_ms: /);
   });
 
-  it("ends with 2 where a file is given twice, by whatever name", () => {
+  it("ends with 2 where a file is given twice, by whatever name", async () => {
     const copy = file("copy.csv", readFileSync(SECOND));
-    expect(refusal([SECOND, copy, "--protocol", PROTOCOL], 2)).toContain(`analyze: ${copy}: `);
-    expect(refusal([SECOND, "--rig", copy, "--protocol", PROTOCOL], 2)).toContain(copy);
+    expect(await refusal([SECOND, copy, "--protocol", PROTOCOL], 2)).toContain(
+      `analyze: ${copy}: `,
+    );
+    expect(await refusal([SECOND, "--rig", copy, "--protocol", PROTOCOL], 2)).toContain(copy);
   });
 
-  it("ends with 2 and names WINDOWS where it is wrong or of other recordings", () => {
+  it("ends with 2 and names WINDOWS where it is wrong or of other recordings", async () => {
     const entry = {
       recording_sha256: "0".repeat(64),
       axis: "FE",
@@ -175,52 +182,64 @@ describe("the headless command", { timeout: PATIENCE_MS * 3 }, () => {
       included: true,
       reason: null,
     };
-    const refused = (name: string, document: unknown) => {
+    const refused = async (name: string, document: unknown) => {
       const path = file(name, JSON.stringify(document));
-      const last = refusal([SECOND, "--windows", path, "--protocol", PROTOCOL], 2);
+      const last = await refusal([SECOND, "--windows", path, "--protocol", PROTOCOL], 2);
       expect(last).toContain(`analyze: ${path}: `);
       return last;
     };
-    expect(refused("w1.json", { version: 1, windows: [entry] })).toContain("None of its windows");
-    expect(refused("w2.json", { version: 2, windows: [entry] })).toContain("Version 2");
-    expect(refused("w3.json", { version: 1, windows: [{ ...entry, K: 1 }] })).toContain(
+    expect(await refused("w1.json", { version: 1, windows: [entry] })).toContain(
+      "None of its windows",
+    );
+    expect(await refused("w2.json", { version: 2, windows: [entry] })).toContain("Version 2");
+    expect(await refused("w3.json", { version: 1, windows: [{ ...entry, K: 1 }] })).toContain(
       "windows.0.K",
     );
-    expect(refused("w4.json", { version: 1, windows: [{ ...entry, axis: "PS" }] })).toContain(
+    expect(await refused("w4.json", { version: 1, windows: [{ ...entry, axis: "PS" }] })).toContain(
       "axis",
     );
   });
 
-  it("ends with 3 and names the first bad recording, with its line, and makes no FILE", () => {
+  it("ends with 3 and names the first bad recording, with its line, and makes no FILE", async () => {
     const out = join(folder, "never.json");
     const lines = readFileSync(SECOND, "utf8").split("\n");
     lines[99] = `${lines[99]?.split(",").slice(0, -1).join(",")},loose`;
     const bad = file("bad.csv", lines.join("\n"));
     const missing = join(folder, "none.csv");
-    const last = refusal([FIRST, bad, missing, "--out", out, "--protocol", PROTOCOL], 3);
+    const last = await refusal([FIRST, bad, missing, "--out", out, "--protocol", PROTOCOL], 3);
     expect(last).toContain(`analyze: ${bad}:100: `);
     expect(existsSync(out)).toBe(false);
-    expect(refusal([missing, "--protocol", PROTOCOL], 3)).toBe(
+    expect(await refusal([missing, "--protocol", PROTOCOL], 3)).toBe(
       `analyze: ${missing}: There is no such file.`,
     );
-    expect(refusal([folder, "--protocol", PROTOCOL], 3)).toContain("folder");
-    expect(refusal(["-", "--protocol", PROTOCOL], 3)).toMatch(/^analyze: -/);
+    expect(await refusal([folder, "--protocol", PROTOCOL], 3)).toContain("folder");
   });
 
-  it("ends with 2 where FILE cannot be made, and never takes the place of what it reads", () => {
+  it("ends with 2 where FILE cannot be made, and never takes the place of what it reads", async () => {
     const nowhere = join(folder, "no", "folder", "result.json");
-    expect(refusal([SECOND, "--protocol", PROTOCOL, "--out", nowhere], 2)).toContain(nowhere);
+    expect(await refusal([SECOND, "--protocol", PROTOCOL, "--out", nowhere], 2)).toContain(nowhere);
     mkdirSync(join(folder, "taken"));
-    expect(refusal([SECOND, "--protocol", PROTOCOL, "--out", join(folder, "taken")], 2)).toContain(
-      "folder",
-    );
+    expect(
+      await refusal([SECOND, "--protocol", PROTOCOL, "--out", join(folder, "taken")], 2),
+    ).toContain("folder");
     const own = file("own.csv", readFileSync(SECOND));
-    expect(refusal([own, "--protocol", PROTOCOL, "--out", own], 2)).toContain("take the place");
+    expect(await refusal([own, "--protocol", PROTOCOL, "--out", own], 2)).toContain(
+      "take the place",
+    );
     expect(readFileSync(own)).toEqual(readFileSync(SECOND));
   });
 
-  it("says nothing but the reason of a name with a line end in it", () => {
-    expect(refusal(["two\nlines.csv", "--protocol", PROTOCOL], 3)).toBe(
+  it("says the reason alone as a process too: no stack, nothing on standard output", () => {
+    const empty = command(["-", "--protocol", PROTOCOL]);
+    expect(empty).toMatchObject({ exit: 3, stdout: "" });
+    expect(empty.stderr).toMatch(/^analyze: -.*: .+[.]\n$/);
+    const wrong = command([FIRST]);
+    expect(wrong).toMatchObject({ exit: 2, stdout: "" });
+    expect(wrong.stderr).toMatch(/^analyze: --protocol: .+[.]\n$/);
+  });
+
+  it("says nothing but the reason of a name with a line end in it", async () => {
+    expect(await refusal(["two\nlines.csv", "--protocol", PROTOCOL], 3)).toBe(
       "analyze: two lines.csv: There is no such file.",
     );
   });
