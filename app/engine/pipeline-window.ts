@@ -349,16 +349,21 @@ export function markRaised(
   }
 }
 
-/** Whether another window of the axis is fitted: asked at every drag, so remembered. */
-export function isKept(bench: Bench, place: Place): boolean {
+/** Those of an axis' windows that are fitted: asked for at every drag, so each answer is remembered. */
+export function keptAmong(bench: Bench, places: readonly Place[]): Place[] {
   const { protocol, prepared } = bench;
-  const key = JSON.stringify([place, protocol.baseline_ms, protocol.model, bench.expected]);
   const known = remembered(keptWindows, prepared, () => new Map<string, boolean>());
-  const before = known.get(key);
-  if (before !== undefined) return before;
-  const kept = examine(bench, place).fit !== null;
-  known.set(key, kept);
-  return kept;
+  const settings = JSON.stringify([protocol.baseline_ms, protocol.model, bench.expected]);
+  return places.filter((place) => {
+    const { onset, nextOnset, windowMs, included } = place;
+    const key = `${onset} ${nextOnset} ${windowMs[0]} ${windowMs[1]} ${included} ${settings}`;
+    let kept = known.get(key);
+    if (kept === undefined) {
+      kept = examine(bench, place).fit !== null;
+      known.set(key, kept);
+    }
+    return kept;
+  });
 }
 
 /** What a screen draws of a fitted window. */

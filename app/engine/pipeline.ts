@@ -13,7 +13,7 @@ import {
   emgBaselines,
   examine,
   foundPlaces,
-  isKept,
+  keptAmong,
   markRaised,
   placesOf,
   resultWindow,
@@ -100,9 +100,7 @@ export function viewWindow(
   if (window.emg.length > 0) {
     const kept = protocol.axes.flatMap(({ name }) => {
       const axis = placesOnAxis(prepared, protocol, name, others);
-      return axis.places
-        .filter((place) => isKept(axis.bench, place))
-        .map((place) => emgBaselines(axis.bench, place));
+      return keptAmong(axis.bench, axis.places).map((place) => emgBaselines(axis.bench, place));
     });
     if (window.included) kept.push(emgBaselines(bench, examined.place));
     markRaised([window], kept);

@@ -1,8 +1,8 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
 import { seededRandom } from "#app/engine/math/random.ts";
-import { findWindows, prepare, viewWindow } from "#app/engine/pipeline.ts";
-import type { Result, TransientProtocol, WindowsDocument } from "#app/engine/types.ts";
+import { analyze, findWindows, prepare, viewWindow } from "#app/engine/pipeline.ts";
+import type { Result, Signals, TransientProtocol, WindowsDocument } from "#app/engine/types.ts";
 import type { MadeRecording, ProtocolChanges, Ramp } from "../support/made-signals.ts";
 import { joint, makeAxis, makeProtocol, makeSignals, rampsAt } from "../support/made-signals.ts";
 import { analyzeOne, codesOf, onlyWindow } from "../support/transient-case.ts";
@@ -173,6 +173,17 @@ describe("the rig", () => {
     expect(result.rig.A0?.I).toBeCloseTo(rig.I, 5);
   });
 
+  it("that no empty recording moves keeps the protocol's values, and is flagged where they are 0", () => {
+    const still = makeSignals({
+      rateHz: RATE,
+      durationS: 3,
+      axes: [{ move: (t) => rampsAt([], t), torque: () => 0 }],
+    });
+    const result = analyzeOne(make(together), makeProtocol(), { rig: [still] });
+    expect(result.rig.A0).toEqual({ K: 0, B: 0, I: 0, K_sd: null, B_sd: null, I_sd: null });
+    expect(codesOf(result.pooled[0] ?? { flags: [] })).toContain("rig_not_removed");
+  });
+
   it("as the protocol states it is taken out by linearity to the last digits", () => {
     const plain = analyzeOne(make(together), makeProtocol());
     const removed = analyzeOne(make(together), makeProtocol({ rig: { A0: rig } }));
@@ -280,6 +291,36 @@ describe("pooling", () => {
       ensemble: { K: null, B: null, I: null, vaf_pct: null },
       share: { K: null, B: null, I: null },
     });
+  });
+
+  it("recordings of one call are pooled in their order, those of other rates without a mean trace", () => {
+    const slower = makeSignals({
+      rateHz: 800,
+      durationS: 8.5,
+      axes: [{ move: (t) => rampsAt(SIX, t), torque: joint((t) => rampsAt(SIX, t), TRUE) }],
+    });
+    const of = (second: Signals) =>
+      analyze({
+        protocol: makeProtocol(),
+        protocolSha256: "protocol",
+        recordings: [
+          { file: "1.csv", sha256: "1", signals: recording({ noiseNm: 0.05 }) },
+          { file: "2.csv", sha256: "2", signals: second },
+        ],
+        rig: [],
+        windows: null,
+      });
+    const together = of(recording());
+    expect(together.windows.map((window) => window.recording)).toEqual([
+      ...Array(6).fill(0),
+      ...Array(6).fill(1),
+    ]);
+    expect(together.pooled[0]).toMatchObject({ windows: 6 });
+    expect(together.pooled[0]?.ensemble.K).toBeCloseTo(together.pooled[0]?.K.estimate ?? 0, 1);
+    const mixed = of(slower).pooled[0];
+    expect(mixed?.K.estimate).toBeCloseTo(TRUE.K, 0);
+    expect(mixed?.ensemble).toEqual({ K: null, B: null, I: null, vaf_pct: null });
+    expect(mixed?.lag_estimate_ms).toBeNull();
   });
 
   it("estimates that follow their order are flagged as related", () => {

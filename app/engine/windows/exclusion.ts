@@ -73,10 +73,11 @@ function isRecorded({ signals, recorded }: WindowPlace, i: number): boolean {
 }
 
 function hasValue(prepared: PreparedAxis, i: number): boolean {
-  return !(
-    Number.isNaN(prepared.velocityRadPerS[i]) ||
-    Number.isNaN(prepared.accelerationRadPerS2[i]) ||
-    Number.isNaN(prepared.torqueNm[i])
+  // Finite: a calibration may take a value out of the range of numbers.
+  return (
+    Number.isFinite(prepared.velocityRadPerS[i]) &&
+    Number.isFinite(prepared.accelerationRadPerS2[i]) &&
+    Number.isFinite(prepared.torqueNm[i])
   );
 }
 
