@@ -1,5 +1,5 @@
-import { toSi } from "../math/units.ts";
-import type { Unit } from "../types.ts";
+import { toSi } from "#app/engine/math/units.ts";
+import type { Unit } from "#app/engine/types.ts";
 
 export interface Calibration {
   unit: Unit;

@@ -1,5 +1,5 @@
 import { describe, expect, it } from "vitest";
-import { rawExtremes } from "./clipping.ts";
+import { rawExtremes } from "#app/engine/channels/clipping.ts";
 
 function extremes(values: number[]) {
   const { clippedRun, ...rest } = rawExtremes(Float64Array.from(values));

@@ -1,6 +1,6 @@
-import { EngineError } from "../errors.ts";
-import { type Dimension, dimensionOf, unitsOf } from "../math/units.ts";
-import type { Protocol, Unit } from "../types.ts";
+import { EngineError } from "#app/engine/errors.ts";
+import { type Dimension, dimensionOf, unitsOf } from "#app/engine/math/units.ts";
+import type { Protocol, Unit } from "#app/engine/types.ts";
 
 const WORDS: Record<Dimension, string> = {
   angle: "an angle",

@@ -1,5 +1,5 @@
 import { describe, expect, it } from "vitest";
-import { countMissing, fillMissing } from "./fill.ts";
+import { countMissing, fillMissing } from "#app/engine/channels/fill.ts";
 
 const gap = Number.NaN;
 

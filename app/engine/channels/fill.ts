@@ -1,4 +1,4 @@
-import type { Segment } from "../types.ts";
+import type { Segment } from "#app/engine/types.ts";
 
 /** Cells without a value. */
 export function countMissing(values: Float64Array): number {

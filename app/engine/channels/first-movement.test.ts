@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
-import type { ChannelSignal, Signals } from "../types.ts";
-import { firstMovement } from "./first-movement.ts";
+import { firstMovement } from "#app/engine/channels/first-movement.ts";
+import type { ChannelSignal, Signals } from "#app/engine/types.ts";
 
 const RATE_HZ = 1000;
 const DEG = Math.PI / 180;

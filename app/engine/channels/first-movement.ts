@@ -1,4 +1,4 @@
-import type { Signals } from "../types.ts";
+import type { Signals } from "#app/engine/types.ts";
 
 export interface FirstMovement {
   /** The word for the direction in which the joint moved. */

@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
+import { momentAboutJoint, type Vector } from "#app/engine/channels/force-plate.ts";
 import numpy from "../../../fixtures/reading-force-plate/numpy.json";
-import { momentAboutJoint, type Vector } from "./force-plate.ts";
 
 const columns = (vector: number[]) =>
   [0, 1, 2].map((i) => Float64Array.of(vector[i] as number)) as [

@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
-import type { TablePreview } from "../types.ts";
-import { proposeChannels } from "./propose.ts";
+import { proposeChannels } from "#app/engine/channels/propose.ts";
+import type { TablePreview } from "#app/engine/types.ts";
 
 const FE = { name: "FE", label: "flexion–extension" };
 const RUD = { name: "RUD", label: "radial–ulnar deviation" };

@@ -1,5 +1,5 @@
-import { type Dimension, dimensionOf, readUnit } from "../math/units.ts";
-import type { TablePreview, Unit } from "../types.ts";
+import { type Dimension, dimensionOf, readUnit } from "#app/engine/math/units.ts";
+import type { TablePreview, Unit } from "#app/engine/types.ts";
 
 export interface ProposedChannel {
   column: string;

@@ -1,5 +1,5 @@
 import { describe, expect, it } from "vitest";
-import { lineOfRow } from "./row-line.ts";
+import { lineOfRow } from "#app/engine/channels/row-line.ts";
 
 describe("lineOfRow", () => {
   it("counts on from the first row where no line is skipped", () => {

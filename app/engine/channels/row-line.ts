@@ -1,4 +1,4 @@
-import type { Table } from "../types.ts";
+import type { Table } from "#app/engine/types.ts";
 
 /** Physical line (from 1) on which a data row of a table begins. */
 export function lineOfRow(

@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
-import type { Protocol, Table, Unit } from "../types.ts";
-import { columnsOf, toSignals } from "./signals.ts";
+import { columnsOf, toSignals } from "#app/engine/channels/signals.ts";
+import type { Protocol, Table, Unit } from "#app/engine/types.ts";
 
 const gap = Number.NaN;
 

@@ -1,5 +1,12 @@
-import { EngineError, type FlagCode, flag, oneLine } from "../errors.ts";
-import { dimensionOf, readUnit } from "../math/units.ts";
+import { type Calibration, calibrate } from "#app/engine/channels/calibrate.ts";
+import { rawExtremes } from "#app/engine/channels/clipping.ts";
+import { checkDimensions } from "#app/engine/channels/dimensions.ts";
+import { countMissing, fillMissing } from "#app/engine/channels/fill.ts";
+import { momentAboutJoint } from "#app/engine/channels/force-plate.ts";
+import { lineOfRow } from "#app/engine/channels/row-line.ts";
+import { stampedTimeBase, statedTimeBase, type TimeBase } from "#app/engine/channels/time-base.ts";
+import { EngineError, type FlagCode, flag, oneLine } from "#app/engine/errors.ts";
+import { dimensionOf, readUnit } from "#app/engine/math/units.ts";
 import type {
   AxisProtocol,
   AxisSignals,
@@ -11,14 +18,7 @@ import type {
   Signals,
   Table,
   Unit,
-} from "../types.ts";
-import { type Calibration, calibrate } from "./calibrate.ts";
-import { rawExtremes } from "./clipping.ts";
-import { checkDimensions } from "./dimensions.ts";
-import { countMissing, fillMissing } from "./fill.ts";
-import { momentAboutJoint } from "./force-plate.ts";
-import { lineOfRow } from "./row-line.ts";
-import { stampedTimeBase, statedTimeBase, type TimeBase } from "./time-base.ts";
+} from "#app/engine/types.ts";
 
 const FEWEST_SAMPLES = 30;
 

@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
+import { stampedTimeBase, statedTimeBase } from "#app/engine/channels/time-base.ts";
 import numpy from "../../../fixtures/reading-time-base/numpy.json";
-import { stampedTimeBase, statedTimeBase } from "./time-base.ts";
 
 const lineOf = (row: number): number => row + 2;
 

@@ -1,6 +1,6 @@
-import { EngineError, quoted } from "../errors.ts";
-import { toSi } from "../math/units.ts";
-import type { Segment, Unit } from "../types.ts";
+import { EngineError, quoted } from "#app/engine/errors.ts";
+import { toSi } from "#app/engine/math/units.ts";
+import type { Segment, Unit } from "#app/engine/types.ts";
 
 export interface TimeBase {
   /** Stamp of each sample in the file's own time, s; NaN where missing. */

@@ -1,7 +1,7 @@
 import { describe, expect, it } from "vitest";
+import { dimensionOf, isUnitText, readUnit, toSi, unitsOf } from "#app/engine/math/units.ts";
+import { UNITS, type Unit } from "#app/engine/types.ts";
 import ucum from "../../../fixtures/reading-units/ucum.json";
-import { UNITS, type Unit } from "../types.ts";
-import { dimensionOf, isUnitText, readUnit, toSi, unitsOf } from "./units.ts";
 
 describe("toSi", () => {
   it("multiplies by UCUM's factors within 1e-15 (UCUM, checked with @lhncbc/ucum-lhc 7.1.10)", () => {

@@ -1,4 +1,4 @@
-import { UNITS, type Unit } from "../types.ts";
+import { UNITS, type Unit } from "#app/engine/types.ts";
 
 export type Dimension =
   | "angle"

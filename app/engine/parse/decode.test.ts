@@ -1,5 +1,5 @@
 import { describe, expect, it } from "vitest";
-import { decode, textOf } from "./decode.ts";
+import { decode, textOf } from "#app/engine/parse/decode.ts";
 
 const utf8 = (text: string): Uint8Array => new TextEncoder().encode(text);
 

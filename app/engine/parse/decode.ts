@@ -1,5 +1,5 @@
-import { EngineError, flag } from "../errors.ts";
-import type { Dialect, Flag } from "../types.ts";
+import { EngineError, flag } from "#app/engine/errors.ts";
+import type { Dialect, Flag } from "#app/engine/types.ts";
 
 export type Encoding = Dialect["encoding"];
 

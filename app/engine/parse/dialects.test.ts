@@ -1,9 +1,9 @@
 import { readFileSync } from "node:fs";
 import { describe, expect, it } from "vitest";
+import { previewTable } from "#app/engine/parse/preview.ts";
+import { readTable } from "#app/engine/parse/read-table.ts";
+import type { TableProtocol } from "#app/engine/types.ts";
 import expected from "../../../fixtures/reading-dialects/expected.json";
-import type { TableProtocol } from "../types.ts";
-import { previewTable } from "./preview.ts";
-import { readTable } from "./read-table.ts";
 
 const AUTO: TableProtocol = { separator: "auto", decimal: "auto", header_row: "auto" };
 const folder = new URL("../../../fixtures/reading-dialects/", import.meta.url);

@@ -1,10 +1,10 @@
 import Papa from "papaparse";
-import { EngineError, quoted } from "../errors.ts";
-import { isUnitText } from "../math/units.ts";
-import type { Dialect, TableProtocol } from "../types.ts";
-import { type Decoded, textOf } from "./decode.ts";
-import { cellCount, MOST_COLUMNS, walkLines } from "./lines.ts";
-import { isMissing, isNumber } from "./number.ts";
+import { EngineError, quoted } from "#app/engine/errors.ts";
+import { isUnitText } from "#app/engine/math/units.ts";
+import { type Decoded, textOf } from "#app/engine/parse/decode.ts";
+import { cellCount, MOST_COLUMNS, walkLines } from "#app/engine/parse/lines.ts";
+import { isMissing, isNumber } from "#app/engine/parse/number.ts";
+import type { Dialect, TableProtocol } from "#app/engine/types.ts";
 
 /** How a file is laid out, and where its rows begin. */
 export interface Layout {

@@ -1,4 +1,4 @@
-import { EngineError } from "../errors.ts";
+import { EngineError } from "#app/engine/errors.ts";
 
 /** A line may be at most this long, in bytes. */
 export const LONGEST_LINE = 1024 * 1024;

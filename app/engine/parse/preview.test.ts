@@ -1,6 +1,6 @@
 import { describe, expect, it } from "vitest";
-import type { TableProtocol } from "../types.ts";
-import { previewTable } from "./preview.ts";
+import { previewTable } from "#app/engine/parse/preview.ts";
+import type { TableProtocol } from "#app/engine/types.ts";
 
 const AUTO: TableProtocol = { separator: "auto", decimal: "auto", header_row: "auto" };
 

@@ -1,6 +1,6 @@
-import type { TablePreview, TableProtocol } from "../types.ts";
-import { decode } from "./decode.ts";
-import { findLayout, HEAD_BYTES } from "./layout.ts";
+import { decode } from "#app/engine/parse/decode.ts";
+import { findLayout, HEAD_BYTES } from "#app/engine/parse/layout.ts";
+import type { TablePreview, TableProtocol } from "#app/engine/types.ts";
 
 /**
  * What a file's first part looks like, for the person who maps its columns.

@@ -1,8 +1,8 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
-import type { TableProtocol } from "../types.ts";
-import { previewTable } from "./preview.ts";
-import { readTable } from "./read-table.ts";
+import { previewTable } from "#app/engine/parse/preview.ts";
+import { readTable } from "#app/engine/parse/read-table.ts";
+import type { TableProtocol } from "#app/engine/types.ts";
 
 const AUTO: TableProtocol = { separator: "auto", decimal: "auto", header_row: "auto" };
 const NAMES = ["t", "ang", "trq"];

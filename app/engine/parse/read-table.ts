@@ -1,8 +1,8 @@
-import { EngineError, flag, quoted } from "../errors.ts";
-import type { Table, TableProtocol } from "../types.ts";
-import { decode } from "./decode.ts";
-import { findLayout, HEAD_BYTES, type Layout } from "./layout.ts";
-import { scanRows } from "./scan-rows.ts";
+import { EngineError, flag, quoted } from "#app/engine/errors.ts";
+import { decode } from "#app/engine/parse/decode.ts";
+import { findLayout, HEAD_BYTES, type Layout } from "#app/engine/parse/layout.ts";
+import { scanRows } from "#app/engine/parse/scan-rows.ts";
+import type { Table, TableProtocol } from "#app/engine/types.ts";
 
 /**
  * Reads the named columns of a recording.

@@ -1,8 +1,14 @@
-import { EngineError, quoted } from "../errors.ts";
-import { textOf } from "./decode.ts";
-import type { Layout } from "./layout.ts";
-import { afterLineEnd, cellCount, LONGEST_LINE, lineEndFrom, refuseLongLine } from "./lines.ts";
-import { LARGEST_VALUE, numberOf } from "./number.ts";
+import { EngineError, quoted } from "#app/engine/errors.ts";
+import { textOf } from "#app/engine/parse/decode.ts";
+import type { Layout } from "#app/engine/parse/layout.ts";
+import {
+  afterLineEnd,
+  cellCount,
+  LONGEST_LINE,
+  lineEndFrom,
+  refuseLongLine,
+} from "#app/engine/parse/lines.ts";
+import { LARGEST_VALUE, numberOf } from "#app/engine/parse/number.ts";
 
 const TAB = 0x09;
 const LF = 0x0a;
