@@ -4,7 +4,6 @@ import { createInterface } from "node:readline";
 import { Writable } from "node:stream";
 import { parseArgs } from "node:util";
 import { z } from "zod";
-import { openDesk } from "#app/auth/desk.server.ts";
 import { hashPassword } from "#app/auth/password.server.ts";
 import {
   emailSchema,
@@ -14,7 +13,6 @@ import {
 } from "#app/domain/person.ts";
 import { ROLES } from "#app/domain/role.ts";
 import { EnvError, readEnv } from "#app/env.server.ts";
-import { makeLab } from "#app/workflows/make-lab.server.ts";
 
 const USAGE = `npm run first-lab -- --lab NAME --name NAME --email ADDRESS [--roles manager,biomechanist]
 
@@ -53,7 +51,11 @@ async function main(): Promise<void> {
   const password = newPasswordSchema.safeParse(await readPassword());
   if (!password.success) throw new UsageError(firstSentence(password.error));
 
-  const desk = await openDesk(readEnv(process.env));
+  const env = readEnv(process.env);
+  // Not before: a wrong call is answered at once.
+  const { openDesk } = await import("#app/auth/desk.server.ts");
+  const { makeLab } = await import("#app/workflows/make-lab.server.ts");
+  const desk = await openDesk(env);
   try {
     const made = await makeLab(desk, {
       labName: options.lab,
