@@ -18,8 +18,8 @@ export async function loader({ request, context, params }: Route.LoaderArgs) {
   if (isDownload) await noteRecordingDownloaded({ store, storage, clock }, actor, recording.id);
   const headers = new Headers({
     ETag: `"${recording.sha256}"`,
-    // Raw bytes never change.
-    "Cache-Control": "private, max-age=31536000, immutable",
+    // Raw bytes never change, yet who may read them does: the server is asked each time.
+    "Cache-Control": "private, no-cache",
     "Content-Type": "application/octet-stream",
     "X-Content-Type-Options": "nosniff",
   });
