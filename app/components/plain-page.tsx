@@ -5,10 +5,12 @@ import { Mark } from "./mark.tsx";
 export function PlainPage({ children }: { children: ReactNode }) {
   return (
     <div className="mx-auto flex min-h-dvh w-full max-w-md flex-col gap-8 px-5 py-10">
-      <p className="flex items-center gap-2 text-xl font-semibold">
-        <Mark />
-        Ogee
-      </p>
+      <header>
+        <p className="flex items-center gap-2 text-xl font-semibold">
+          <Mark />
+          Ogee
+        </p>
+      </header>
       <main id="main" tabIndex={-1}>
         {children}
       </main>
