@@ -1,3 +1,4 @@
+import { checkDimensions } from "#app/engine/channels/dimensions.ts";
 import { columnsOf, toSignals } from "#app/engine/channels/signals.ts";
 import { EngineError, flag } from "#app/engine/errors.ts";
 import { impedanceModel, SAMPLES_PER_TERM } from "#app/engine/fit/fit-model.ts";
@@ -46,8 +47,9 @@ export type { RecordingInput } from "#app/engine/pipeline-window.ts";
 /** Name and version that every result carries; the version changes whenever a number may. */
 export const ENGINE = "ogee-engine 1.0.0";
 
-/** Bytes → Signals. @throws EngineError */
+/** Bytes → Signals. @throws EngineError; what is wrong with the protocol before what is wrong with the file */
 export function readRecording(bytes: Uint8Array, protocol: Protocol): Signals {
+  checkDimensions(protocol);
   return toSignals(readTable(bytes, protocol.table, columnsOf(protocol)), protocol);
 }
 
