@@ -46,6 +46,8 @@ const study: TakeInStudy = {
     { id: "p2", code: "W02", testedSide: "left" },
   ],
   choices: defaultChoices,
+  fileNamePattern: null,
+  lastDay: "2026-12-02",
 };
 
 const PROPOSED: ProposedMap = {
@@ -284,6 +286,13 @@ describe("how a file stands", () => {
     const batch = readAll(withFiles(["bare.csv"]), "bare.csv");
     expect(standing(batch, "bare.csv")).toEqual({ kind: "needs_you", wants: ["participant"] });
     expect(confirmAxis(batch, study, "bare.csv", "FE")).toBe(batch);
+  });
+
+  it("does not take a visit on a day that is still to come", () => {
+    let batch = readAll(withFiles(["w01_bare.csv"]), "w01_bare.csv");
+    batch = confirmAxis(batch, study, "w01_bare.csv", "FE");
+    batch = setPlace(batch, ["w01_bare.csv"], { day: "2027-12-01" });
+    expect(standing(batch, "w01_bare.csv").kind).toBe("needs_you");
   });
 
   it("names what the map lacks in few words", () => {

@@ -29,6 +29,10 @@ export interface TakeInStudy {
   participants: readonly { id: string; code: string; testedSide: TestedSide }[];
   /** Of the newest protocol. */
   choices: ProtocolChoices;
+  /** Of file names, as the study keeps it. */
+  fileNamePattern: string | null;
+  /** A visit's day is not after this one, ISO 8601. */
+  lastDay: string;
 }
 
 /** Where a recording belongs; "" where nobody has said yet. */
@@ -56,7 +60,7 @@ export type Hash =
 
 export type Sending =
   | { status: "not_asked" }
-  | { status: "waiting"; sentBytes: number }
+  | { status: "waiting" }
   | { status: "sending"; sentBytes: number }
   | { status: "broken"; sentBytes: number; sentence: string }
   | { status: "verifying" }
@@ -519,6 +523,7 @@ function wantsOf(
   if (file.place.conditionId === "") wants.push("condition");
   if (file.place.postureId === "") wants.push("posture");
   if (file.place.day === "") wants.push("day of the visit");
+  if (file.place.day > study.lastDay) wants.push("a day of the visit that is not still to come");
   wants.push(...mapProblemsOf(batch, study, file).map(({ short }) => short));
   const side = sideOf(study, file);
   if (reading === null || side === null) return wants;

@@ -1,3 +1,4 @@
+import type { HeldRecording } from "./batch.ts";
 import { type FinishAnswer, SendError, type SendPort } from "./send-file.ts";
 
 /** The server of this page and its storage, by fetch and by PUT with progress. */
@@ -13,6 +14,18 @@ export function httpPort(studyId: string): SendPort {
       await ask(`/uploads/${uploadId}/cancel`, {});
     },
   };
+}
+
+/** Which of these bytes the lab has already. */
+export async function findHeld(
+  studyId: string,
+  sha256s: readonly string[],
+): Promise<{ sha256: string; recording: HeldRecording }[]> {
+  const query = new URLSearchParams(sha256s.map((sha256) => ["sha256", sha256]));
+  const answer = await ask<{ held: { sha256: string; recording: HeldRecording }[] }>(
+    `/studies/${studyId}/uploads?${query}`,
+  );
+  return answer.held;
 }
 
 /**

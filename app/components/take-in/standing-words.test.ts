@@ -1,0 +1,39 @@
+import { describe, expect, it } from "vitest";
+import { percent, reasonInWords, standingInWords } from "./standing-words.ts";
+
+describe("a file's standing in words", () => {
+  it("names what is wanted, the first two by name", () => {
+    expect(standingInWords({ kind: "needs_you", wants: ["participant"] })).toBe(
+      "needs you: participant",
+    );
+    expect(standingInWords({ kind: "needs_you", wants: ["a", "b", "c", "d"] })).toBe(
+      "needs you: a; b; and 2 more",
+    );
+  });
+
+  it("says 100 % only of what has arrived whole", () => {
+    expect(standingInWords({ kind: "sending", share: 0.9999 })).toBe("uploading 99 %");
+    expect(percent(1)).toBe("100 %");
+  });
+
+  it("says where a broken upload stands and why", () => {
+    expect(standingInWords({ kind: "broken", share: 0.42, sentence: "No connection." })).toBe(
+      "stopped at 42 %: No connection.",
+    );
+  });
+});
+
+describe("the reason beside the button", () => {
+  const needs = (name: string) => ({
+    name,
+    standing: { kind: "needs_you" as const, wants: ["condition"] },
+  });
+
+  it("names the one file that needs a person, or counts them and names the first", () => {
+    expect(reasonInWords([needs("a.csv")], 0)).toBe("a.csv needs you: condition.");
+    expect(reasonInWords([needs("a.csv"), needs("b.csv")], 1)).toBe(
+      "2 files need you, first a.csv: condition. 1 file is being read.",
+    );
+    expect(reasonInWords([], 0)).toBe("");
+  });
+});
