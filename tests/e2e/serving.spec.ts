@@ -99,7 +99,7 @@ test("a script that found its way into a page does not run, and pages need none 
     script.textContent = "document.title = 'it ran'";
     document.body.append(script);
   });
-  await expect(page).toHaveTitle("Sign in – Ogee");
+  await expect(page).toHaveTitle("Sign in · Ogee");
   await expect.poll(() => complaints.join(" ")).toMatch(/Content Security Policy/);
 });
 

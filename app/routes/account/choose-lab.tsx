@@ -13,7 +13,7 @@ import { notFound } from "#app/domain/refusal.ts";
 import type { Route } from "./+types/choose-lab.ts";
 
 export function meta(): Route.MetaDescriptors {
-  return [{ title: "Choose a lab – Ogee" }];
+  return [{ title: "Choose a lab · Ogee" }];
 }
 
 export async function loader({ request, context }: Route.LoaderArgs) {

@@ -13,7 +13,7 @@ import { PlainPage } from "#app/components/plain-page.tsx";
 import type { Route } from "./+types/sign-in.ts";
 
 export function meta(): Route.MetaDescriptors {
-  return [{ title: "Sign in – Ogee" }];
+  return [{ title: "Sign in · Ogee" }];
 }
 
 export async function loader({ request, context, url }: Route.LoaderArgs) {
