@@ -87,9 +87,7 @@ export default function SignIn({ loaderData, actionData }: Route.ComponentProps)
           </Button>
         </div>
       </Form>
-      <p className="mt-6 text-sm text-ink-2">
-        Your lab’s manager gives you an account, and a new password where you have lost yours.
-      </p>
+      <p className="mt-6 text-sm text-ink-2">Whoever runs Ogee in your lab gives out accounts.</p>
       {loaderData.isSecondFactorOff ? (
         <p className="mt-2 border-l-2 border-ink pl-2 text-sm">
           This is a demo on this machine: its accounts sign in without a second factor.
