@@ -267,6 +267,12 @@ describe("a protocol", () => {
       "derivative.savitzky_golay.span_ms",
       /over 0/,
     ],
+    [
+      "derivative",
+      { savitzky_golay: { polynomial: 3, span_ms: 1001 } },
+      "derivative.savitzky_golay.span_ms",
+      /most is 1000/,
+    ],
     // robustness
     ["robustness", { window_end_ms: [], cutoff_hz: [20] }, "robustness.window_end_ms", /At least/],
     ["robustness", { window_end_ms: [40], cutoff_hz: [] }, "robustness.cutoff_hz", /cut-off/],

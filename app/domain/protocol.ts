@@ -34,6 +34,8 @@ const FORCE_UNITS = ["N", "kN"] as const;
 
 /** Furthest from the onset that a window or a baseline may reach, ms. */
 const REACH_MS = 10_000;
+/** A longer smoothing erases every perturbation, and takes its time over it. */
+const LONGEST_SMOOTHING_MS = 1000;
 /** Most values tried for each of the two choices of the robustness grid. */
 const GRID_MAX = 64;
 
@@ -186,7 +188,7 @@ const choiceFields = {
       z.strictObject({
         savitzky_golay: z.strictObject({
           polynomial: z.int().min(2).max(5),
-          span_ms: z.number().positive(),
+          span_ms: z.number().positive().max(LONGEST_SMOOTHING_MS),
         }),
       }),
     ])

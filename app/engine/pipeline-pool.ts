@@ -8,6 +8,7 @@ import {
   fitModel,
   impedanceModel,
   modelledTorque,
+  SAMPLES_PER_TERM,
   withoutFixed,
 } from "#app/engine/fit/fit-model.ts";
 import { lagProfile } from "#app/engine/fit/lag-profile.ts";
@@ -276,6 +277,7 @@ function estimatesAt(
       if (prepared === null || endMs <= startMs) return null;
       const { rateHz } = signals;
       const span = windowSpan(place.onset, [startMs, endMs], protocol.baseline_ms, rateHz);
+      if (span.end - span.start + 1 < SAMPLES_PER_TERM * model.free.length) return null;
       const { nextOnset, byHand } = place;
       const state = { nextOnset, byHand, underWay: false, otherMovement: false };
       const baseline = baselineOf(prepared, span);

@@ -376,6 +376,13 @@ describe("pooling", () => {
         ?.robustness,
     ).toHaveLength(1);
   });
+
+  it("a window end that leaves too few samples for the terms gives null on the robustness surface", () => {
+    const { pooled } = analyzed({}, { robustness: { window_end_ms: [4, 5], cutoff_hz: [20] } });
+    // At 1 kHz 0 to 4 ms are five samples, 0 to 5 ms six: two for each of three terms.
+    expect(pooled[0]?.robustness?.[0]?.K).toBeNull();
+    expect(pooled[0]?.robustness?.[1]?.K).not.toBeNull();
+  });
 });
 
 describe("late torque and the reflex limit", () => {

@@ -48,6 +48,11 @@ describe("Savitzky–Golay smoothing as such", () => {
     for (let i = half; i < x.length - half; i++) expect(y[i]).toBeCloseTo(x[i] ?? 0, 12);
   });
 
+  it("gives no value where the span is longer than the signal, however long", () => {
+    const y = savitzkyGolaySmooth(new Float64Array(30), 1_000_000_001, 3);
+    expect(y).toEqual(new Float64Array(30).fill(Number.NaN));
+  });
+
   it("refuses an even span and one that is not over the polynomial's degree", () => {
     for (const [span, degree] of [
       [4, 2],

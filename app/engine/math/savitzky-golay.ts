@@ -53,9 +53,10 @@ export function savitzkyGolaySmooth(
   spanSamples: number,
   polynomial: number,
 ): Float64Array {
+  const y = new Float64Array(x.length).fill(Number.NaN);
+  if (spanSamples > x.length) return y;
   const weights = savitzkyGolayCoefficients(spanSamples, polynomial);
   const half = (spanSamples - 1) / 2;
-  const y = new Float64Array(x.length).fill(Number.NaN);
   for (let i = half; i < x.length - half; i++) {
     let sum = 0;
     for (let j = 0; j < spanSamples; j++) {
