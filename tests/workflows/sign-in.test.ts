@@ -12,6 +12,9 @@ import * as signOut from "#app/routes/account/sign-out.ts";
 import { openTestLab, type TestLab } from "../support/lab.ts";
 import { cookieOf, openTestGate, signInAs, visit } from "../support/visit.ts";
 
+// Hashing a password costs time on purpose, and some tests try dozens.
+vi.setConfig({ testTimeout: 60_000 });
+
 const PASSWORD = "three words and a comma,";
 const HOUR_MS = 3_600_000;
 let passwordHash: string;
