@@ -40,7 +40,7 @@ export function Layout({ children }: { children: ReactNode }) {
       </head>
       <body>
         <a
-          className="sr-only z-10 rounded border border-edge bg-sheet px-3 py-2 focus:not-sr-only focus:fixed focus:top-2 focus:left-2"
+          className="sr-only z-10 rounded border-edge bg-sheet focus:not-sr-only focus:border focus:fixed focus:top-2 focus:left-2 focus:px-3 focus:py-2"
           href="#main"
         >
           Skip to the content

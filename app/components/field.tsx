@@ -8,7 +8,7 @@ import {
 
 interface FieldFrame {
   label: ReactNode;
-  /** What is asked for, in a sentence, below the label. */
+  /** What is asked for, in a sentence, below the field. */
   hint?: ReactNode;
   /** What is wrong and what to do; stands beside the field and is read with it. */
   error?: string | string[] | null;
@@ -52,11 +52,6 @@ function Frame({
       <label className={labelClass(frame.labelHidden)} htmlFor={id}>
         {frame.label}
       </label>
-      {frame.hint ? (
-        <p className="mb-1 text-sm text-ink-2" id={`${id}-hint`}>
-          {frame.hint}
-        </p>
-      ) : null}
       {frame.unit ? (
         <div className="flex items-center gap-2">
           {children}
@@ -65,6 +60,11 @@ function Frame({
       ) : (
         children
       )}
+      {frame.hint ? (
+        <p className="mt-1 text-sm text-ink-2" id={`${id}-hint`}>
+          {frame.hint}
+        </p>
+      ) : null}
       <FieldError error={error} id={`${id}-error`} />
     </div>
   );
@@ -87,7 +87,7 @@ export function FieldError({ id, error }: { id?: string; error: FieldFrame["erro
 
 export type TextFieldProps = FieldFrame & InputHTMLAttributes<HTMLInputElement>;
 
-/** Label, hint, input, error. Numbers are `type="text" inputMode="decimal"`, so that a comma is no loss. */
+/** Label, input, hint, error. Numbers are `type="text" inputMode="decimal"`, so that a comma is no loss. */
 export function TextField({
   label,
   hint,

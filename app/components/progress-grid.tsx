@@ -84,7 +84,7 @@ export function ProgressGrid({
             <tbody>
               {participants.map((participant, row) => (
                 <tr className="hover:bg-hover" key={participant.id}>
-                  <th className="num border-b border-rule text-left" scope="row">
+                  <th className="num border-b border-rule text-left leading-[25px]" scope="row">
                     {participant.code}
                   </th>
                   {conditions.map((condition, conditionIndex) => {
@@ -148,7 +148,7 @@ function GridCell({
   return (
     <td className="border-b border-rule p-0 text-center">
       <Link
-        className="relative block h-[25px] w-full leading-[25px]"
+        className="relative flex h-[25px] w-full items-center justify-center"
         data-cell={dataCell}
         onFocus={onFocus}
         tabIndex={tabIndex}
@@ -157,10 +157,7 @@ function GridCell({
       >
         <StateMark silent state={cell.state} />
         {count > 1 ? (
-          <span
-            aria-hidden="true"
-            className="num absolute top-0 left-[calc(50%+10px)] leading-[25px]"
-          >
+          <span aria-hidden="true" className="num absolute left-[calc(50%+10px)]">
             {count}
           </span>
         ) : null}

@@ -67,17 +67,19 @@ export function Spine({
   );
   return (
     <>
-      <header className="sticky top-0 hidden h-dvh flex-col overflow-y-auto border-r border-rule pt-4 pl-4 md:flex">
-        <div className="mb-3">{brand}</div>
-        <div className="mr-2 mb-3 text-sm text-ink-2">{where}</div>
-        {children}
+      <header className="hidden border-r border-rule md:block">
+        <div className="sticky top-0 flex h-dvh flex-col overflow-y-auto pt-4 pl-4">
+          <div className="mb-3">{brand}</div>
+          <div className="mr-2 mb-3 text-sm text-ink-2">{where}</div>
+          {children}
+        </div>
       </header>
       <header className="border-b border-rule md:hidden">
         <details className="group" key={menuKey}>
           <summary className="flex min-h-12 list-none items-center gap-3 px-5 [&::-webkit-details-marker]:hidden">
             <Mark />
             <span className="min-w-0 grow truncate text-sm text-ink-2">{where}</span>
-            <span className="rounded border border-edge bg-sheet px-2.5 py-1">
+            <span className="rounded border border-edge bg-sheet px-2.5 py-1 whitespace-nowrap">
               <span className="group-open:hidden">Menu</span>
               <span className="hidden group-open:inline">Close</span>
             </span>

@@ -66,7 +66,7 @@ export function StateMark({
   const drawing = (
     <svg
       aria-hidden="true"
-      className={`inline-block shrink-0 align-middle ${state === "nothing" ? "text-aside" : ""}`}
+      className={`block shrink-0 ${state === "nothing" ? "text-aside" : ""}`}
       height="20"
       viewBox="0 0 20 20"
       width="20"
@@ -77,14 +77,14 @@ export function StateMark({
   );
   if (word) {
     return (
-      <span className="inline-flex items-center gap-1.5 whitespace-nowrap">
+      <span className="inline-flex items-center gap-1.5 align-middle whitespace-nowrap">
         {drawing}
         {state}
       </span>
     );
   }
   return (
-    <span className="inline-flex" title={silent ? undefined : state}>
+    <span className="inline-flex align-middle" title={silent ? undefined : state}>
       {drawing}
       {silent ? null : <span className="sr-only">{state}</span>}
     </span>

@@ -1,4 +1,5 @@
 import { Link } from "react-router";
+import type { CellState } from "#app/domain/recording.ts";
 import { recordingsWithoutFit, type StudyProgress } from "#app/domain/task.ts";
 import { StateMark } from "./state-mark.tsx";
 
@@ -21,21 +22,11 @@ export function StudyTable({
             <th className="r" scope="col">
               recordings
             </th>
-            <th className="r" scope="col">
-              no fit yet
-            </th>
-            <th className="r" scope="col">
-              draft
-            </th>
-            <th className="r" scope="col">
-              submitted
-            </th>
-            <th className="r" scope="col">
-              returned
-            </th>
-            <th className="r" scope="col">
-              approved
-            </th>
+            <StateHead state="recorded">no fit yet</StateHead>
+            <StateHead state="draft">draft</StateHead>
+            <StateHead state="submitted">submitted</StateHead>
+            <StateHead state="returned">returned</StateHead>
+            <StateHead state="approved">approved</StateHead>
           </tr>
         </thead>
         <tbody>
@@ -52,11 +43,11 @@ export function StudyTable({
               <td className="text-ink-2">{study.rigName ?? "–"}</td>
               <td className="r num">{study.participants}</td>
               <td className="r num">{study.recordings}</td>
-              <CountCell count={recordingsWithoutFit(study)} state="recorded" />
-              <CountCell count={study.fits.draft} state="draft" />
-              <CountCell count={study.fits.submitted} state="submitted" />
-              <CountCell count={study.fits.returned} state="returned" />
-              <CountCell count={study.fits.approved} state="approved" />
+              <CountCell count={recordingsWithoutFit(study)} />
+              <CountCell count={study.fits.draft} />
+              <CountCell count={study.fits.submitted} />
+              <CountCell count={study.fits.returned} />
+              <CountCell count={study.fits.approved} />
             </tr>
           ))}
         </tbody>
@@ -65,23 +56,18 @@ export function StudyTable({
   );
 }
 
-function CountCell({
-  count,
-  state,
-}: {
-  count: number;
-  state: "recorded" | "draft" | "submitted" | "returned" | "approved";
-}) {
+/** A column's state: its mark and its word. */
+function StateHead({ state, children }: { state: CellState; children: string }) {
   return (
-    <td className="r num">
-      {count === 0 ? (
-        <span className="text-ink-2">0</span>
-      ) : (
-        <span className="inline-flex items-center gap-1">
-          <StateMark silent state={state} />
-          {count}
-        </span>
-      )}
-    </td>
+    <th className="r" scope="col">
+      <span className="inline-flex items-center gap-1">
+        <StateMark silent state={state} />
+        {children}
+      </span>
+    </th>
   );
+}
+
+function CountCell({ count }: { count: number }) {
+  return <td className={`r num ${count === 0 ? "text-ink-2" : ""}`}>{count}</td>;
 }

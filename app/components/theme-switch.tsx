@@ -12,7 +12,7 @@ export function ThemeSwitch({ theme, back }: { theme: Theme; back: string }) {
     <Form
       action="/preferences"
       aria-label="How the screen looks"
-      className="flex gap-3"
+      className="flex gap-2"
       method="post"
       onSubmit={(event) => {
         const { submitter } = event.nativeEvent as SubmitEvent;
@@ -26,7 +26,7 @@ export function ThemeSwitch({ theme, back }: { theme: Theme; back: string }) {
       {THEMES.map((word) => (
         <button
           aria-pressed={word === shown}
-          className="min-h-6 text-sm text-ink-2 hover:text-ink aria-pressed:font-semibold aria-pressed:text-ink"
+          className="min-h-6 min-w-6 text-sm text-ink-2 hover:text-ink aria-pressed:font-semibold aria-pressed:text-ink"
           key={word}
           name="theme"
           type="submit"

@@ -1,3 +1,4 @@
+import type { ReactNode } from "react";
 import { Link } from "react-router";
 import {
   columnDecimals,
@@ -60,12 +61,17 @@ export function ValueGrid({
   const number = (value: number | null) => formatNumber(shown(value), decimals);
   const half = (interval: Interval | null) => {
     const width = halfWidth(interval);
-    return width === null ? "" : ` ± ${number(width)}`;
+    return width === null ? null : (
+      <>
+        <span className="mx-[3px] text-ink-2">±</span>
+        {number(width)}
+      </>
+    );
   };
 
   return (
     <div className="wide">
-      <table className="rows">
+      <table className="rows [&_:is(th,td)]:pr-3.5">
         <caption className="sr-only">{caption}</caption>
         <thead>
           <tr>
@@ -86,7 +92,7 @@ export function ValueGrid({
                 {row.code}
               </th>
               {row.cells.map((cell, place) => (
-                <td className="r num" key={conditions[place]?.id ?? place}>
+                <td className="r num relative" key={conditions[place]?.id ?? place}>
                   {cell === null ? (
                     <>
                       <span aria-hidden="true" className="text-ink-2">
@@ -95,7 +101,10 @@ export function ValueGrid({
                       <span className="sr-only">no value</span>
                     </>
                   ) : (
-                    <ValueText cell={cell} text={`${number(cell.mean)}${half(cell.t)}`} />
+                    <ValueText cell={cell}>
+                      {number(cell.mean)}
+                      {half(cell.t)}
+                    </ValueText>
                   )}
                 </td>
               ))}
@@ -119,7 +128,9 @@ export function ValueGrid({
             ))}
           </tr>
           <tr>
-            <th scope="row">participants</th>
+            <th className="text-ink-2" scope="row">
+              n<span className="sr-only"> participants</span>
+            </th>
             {means.map((mean, place) => (
               <td className="r num" key={conditions[place]?.id ?? place}>
                 {mean.n}
@@ -128,7 +139,9 @@ export function ValueGrid({
           </tr>
           {baselineName === null ? null : (
             <tr>
-              <th scope="row">change from {baselineName}</th>
+              <th className="text-ink-2" scope="row">
+                change<span className="sr-only"> from {baselineName}</span>
+              </th>
               {changes.map((change, place) => (
                 <td
                   className="r num"
@@ -152,17 +165,17 @@ export function ValueGrid({
   );
 }
 
-function ValueText({ cell, text }: { cell: GridValue; text: string }) {
+function ValueText({ cell, children }: { cell: GridValue; children: ReactNode }) {
   const title = `${formatFull(cell.mean)}, ${cell.windows} windows, ${cell.state}${cell.isVerified ? "" : ", unverified"}`;
   const [only] = cell.recordingIds;
   const number = (
     <>
-      {text}
       {cell.state === "approved" ? null : (
-        <span className="-mr-1 ml-0.5 inline-block scale-80">
+        <span className="absolute top-1 left-[-6px] scale-75">
           <StateMark state={cell.state} />
         </span>
       )}
+      {children}
       {cell.isVerified ? null : <span className="unit block font-sans">unverified</span>}
     </>
   );

@@ -58,7 +58,9 @@ export function fieldsOfChoices(choices: ProtocolChoices): ProtocolFields {
     max_filled_samples: choices.max_filled_samples,
   };
   return {
-    ...Object.fromEntries(NUMBER_FIELDS.map((field) => [field, String(numbers[field] ?? "")])),
+    ...Object.fromEntries(
+      NUMBER_FIELDS.map((field) => [field, String(numbers[field] ?? "").replace("-", "−")]),
+    ),
     filter: filter === null ? "none" : "butterworth",
     derivative: smoothing === null ? "central" : "savitzky_golay",
     "onset.from": onset.from,

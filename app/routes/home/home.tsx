@@ -51,7 +51,7 @@ export default function Home({ loaderData }: Route.ComponentProps) {
   const { studies, tasks, lines, roles, labName, maySetUp } = loaderData;
   return (
     <>
-      <PageHead facts={[labName, `you are ${roles.join(" and ")} here`]} title="For you" />
+      <PageHead facts={[labName, `you are ${listed(roles)} here`]} title="For you" />
       {studies.length === 0 ? (
         <Empty
           text={
@@ -96,6 +96,11 @@ export default function Home({ loaderData }: Route.ComponentProps) {
       <Cautions />
     </>
   );
+}
+
+/** "biomechanist, manager and reviewer". */
+function listed(words: readonly string[]): string {
+  return words.length < 2 ? words.join("") : `${words.slice(0, -1).join(", ")} and ${words.at(-1)}`;
 }
 
 function Section({ id, title, children }: { id: string; title: string; children: ReactNode }) {

@@ -323,7 +323,7 @@ function RemoveRow({
   return (
     <Button
       {...form.remove.getButtonProps({ name, index: place })}
-      aria-label={`Take ${what} ${place + 1} out`}
+      aria-label={`Take out ${what} ${place + 1}`}
       look="quiet"
     >
       Take out

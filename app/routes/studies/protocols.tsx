@@ -221,7 +221,7 @@ function ProtocolForm({
   return (
     <Form
       aria-label="A new version of the protocol"
-      className="mb-6 max-w-4xl border-b border-rule pb-6"
+      className="mb-6 max-w-5xl border-b border-rule pb-6"
       method="post"
       noValidate
     >
@@ -292,16 +292,18 @@ function ProtocolForm({
         />
         {number("filter.cutoff_hz", "Cut-off", "Hz", "−3 dB after one pass.")}
         {number("filter.order", "Order of one pass")}
-        <SelectField
-          defaultValue={fields.derivative}
-          error={errorOf("derivative")}
-          label="Before the differences"
-          name="derivative"
-          options={[
-            { value: "central", label: "no smoothing" },
-            { value: "savitzky_golay", label: "Savitzky–Golay" },
-          ]}
-        />
+        <div className="lg:col-start-1">
+          <SelectField
+            defaultValue={fields.derivative}
+            error={errorOf("derivative")}
+            label="Before the differences"
+            name="derivative"
+            options={[
+              { value: "central", label: "no smoothing" },
+              { value: "savitzky_golay", label: "Savitzky–Golay" },
+            ]}
+          />
+        </div>
         {number(
           "derivative.savitzky_golay.polynomial",
           "Its polynomial",
@@ -382,7 +384,10 @@ function ProtocolForm({
           {isFirst ? "Save version 1" : `Save version ${(basedOn?.number ?? 0) + 1}`}
         </Button>
         {isFirst ? null : (
-          <Link className="link px-2" to={`/studies/${studyId}/protocols`}>
+          <Link
+            className="link inline-flex min-h-6 items-center px-2"
+            to={`/studies/${studyId}/protocols`}
+          >
             Leave it as it is
           </Link>
         )}
@@ -418,7 +423,7 @@ function Part({ title, children }: { title: string; children: ReactNode }) {
   return (
     <fieldset className="border-t border-rule pt-3 pb-4">
       <legend className="float-left mb-2 w-full font-semibold">{title}</legend>
-      <div className="clear-both grid grid-cols-1 items-start gap-x-6 gap-y-3 sm:grid-cols-2 lg:grid-cols-3">
+      <div className="clear-both grid grid-cols-1 items-start gap-x-6 gap-y-3 sm:grid-cols-2 lg:grid-cols-4">
         {children}
       </div>
     </fieldset>

@@ -1,3 +1,4 @@
+import { Link } from "react-router";
 import { deskContext } from "#app/auth/context.server.ts";
 import { requireActor } from "#app/auth/require.server.ts";
 import { ParticipantFigure } from "#app/charts/participant-figure.tsx";
@@ -125,11 +126,11 @@ export default function Study({ loaderData }: Route.ComponentProps) {
       {loaderData.refused > 0 ? (
         <FlagNote
           text={`${countOf(loaderData.refused, "file was", "files were")} refused.`}
-          todo="They stand in no cell."
+          todo="What is refused stands in no cell."
         >
-          <a className="link" href={`${base}/recordings?state=refused`}>
+          <Link className="link" to={`${base}/recordings?state=refused`}>
             See why
-          </a>
+          </Link>
         </FlagNote>
       ) : null}
       {isReady ? (
@@ -197,7 +198,7 @@ function Values({ shown }: { shown: Data }) {
   return (
     <section aria-labelledby="values">
       <h2 id="values">
-        {title}, <span className="num font-semibold">{scale.unit}</span>{" "}
+        {title}, <span className="unit font-mono">{scale.unit}</span>{" "}
         <span className="unit whitespace-normal">
           {wanted.approvedOnly ? "approved fits" : "all current fits"}, {withValue} of{" "}
           {countOf(participants.length, "participant")}
@@ -251,7 +252,7 @@ function Values({ shown }: { shown: Data }) {
             Behind ± half the{" "}
             {table.level === null ? "" : `${formatNumber(table.level * 100, 0)} % `}
             interval, Student’s t over windows in a participant’s row and over participants (95 %)
-            below.{" "}
+            below.{baseline ? ` Change: from ${baseline.name}, in participants with both.` : null}{" "}
             {table.unapproved > 0
               ? `${table.unapproved} of ${table.shown} values are not approved. `
               : null}
