@@ -324,6 +324,33 @@ function writeOut(out: string, text: string): void {
   }
 }
 
+/** Refuses windows of other recordings only, and two that begin at the same sample. */
+async function checkWindows(
+  file: string,
+  { windows }: WindowsDocument,
+  recordings: readonly RecordingInput[],
+): Promise<void> {
+  const { nearestSample } = await import("#app/engine/windows/nearest-sample.ts");
+  const seen = new Set<string>();
+  let named = 0;
+  for (const [index, { recording_sha256, axis, onset_s }] of windows.entries()) {
+    const recording = recordings.find(({ sha256 }) => sha256 === recording_sha256);
+    if (recording === undefined) continue;
+    named += 1;
+    const key = `${recording_sha256} ${nearestSample(recording.signals.timeS, onset_s)} ${axis}`;
+    if (seen.has(key)) {
+      throw new Refusal(
+        2,
+        file,
+        `windows.${index}: Another window of ${axis} begins at the same sample; it would count twice.`,
+      );
+    }
+    seen.add(key);
+  }
+  if (named === 0)
+    throw new Refusal(2, file, "None of its windows is of a recording that is given.");
+}
+
 // ---------------------------------------------------------------- the command
 
 async function analyzeFiles(
@@ -343,10 +370,7 @@ async function analyzeFiles(
   const recordings = readRecordings(engine, files.recordings, protocol, seen);
   const rig = readRecordings(engine, files.rig, protocol, seen);
   if (files.windows !== null && windows !== null) {
-    const hashes = recordings.map((recording) => recording.sha256);
-    if (!windows.windows.some((window) => hashes.includes(window.recording_sha256))) {
-      throw new Refusal(2, files.windows, "None of its windows is of a recording that is given.");
-    }
+    await checkWindows(files.windows, windows, recordings);
   }
   try {
     const result = engine.analyze({ protocol, protocolSha256, recordings, rig, windows });

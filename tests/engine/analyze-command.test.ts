@@ -195,6 +195,9 @@ describe("the headless command", { timeout: PATIENCE_MS * 3 }, () => {
     expect(await refused("w3.json", { version: 1, windows: [{ ...entry, K: 1 }] })).toContain(
       "windows.0.K",
     );
+    const sha = createHash("sha256").update(readFileSync(SECOND)).digest("hex");
+    const near = [1.3721, 1.3722].map((onset_s) => ({ ...entry, recording_sha256: sha, onset_s }));
+    expect(await refused("w5.json", { version: 1, windows: near })).toContain("same sample");
     expect(await refused("w4.json", { version: 1, windows: [{ ...entry, axis: "PS" }] })).toContain(
       "axis",
     );
