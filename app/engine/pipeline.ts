@@ -39,7 +39,6 @@ import { windowSpan } from "#app/engine/windows/window-span.ts";
 // what, and the first movement in words.
 export type { FirstMovement } from "#app/engine/channels/first-movement.ts";
 export { firstMovement } from "#app/engine/channels/first-movement.ts";
-export type { ProposedChannel, ProposedMap } from "#app/engine/channels/propose.ts";
 export { proposeChannels } from "#app/engine/channels/propose.ts";
 export { previewTable } from "#app/engine/parse/preview.ts";
 export type { RecordingInput } from "#app/engine/pipeline-window.ts";

@@ -1,7 +1,9 @@
-import { firstMovement } from "#app/engine/channels/first-movement.ts";
-import { proposeChannels } from "#app/engine/channels/propose.ts";
-import { previewTable } from "#app/engine/parse/preview.ts";
-import { readRecording } from "#app/engine/pipeline.ts";
+import {
+  firstMovement,
+  previewTable,
+  proposeChannels,
+  readRecording,
+} from "#app/engine/pipeline.ts";
 import type {
   AxisMovement,
   FileHead,

@@ -85,6 +85,21 @@ describe("firstMovement", () => {
     expect(first({ torque: (_, i) => (i % 2 === 0 ? 1 : -1) })?.torqueSign).toBe(0);
   });
 
+  it("is not misled by a heavy limb on a soft spring that is moved fast", () => {
+    // 0.15 N·m of stiffness under 0.75 N·m of inertia, as a bare wrist has it.
+    const at = (i: number) => 3 * DEG * ramp((i - 1500) / 50);
+    const acceleration = (i: number) => (at(i + 1) - 2 * at(i) + at(i - 1)) * RATE_HZ ** 2;
+    const limb = (turned: number) => (angle: number, i: number) =>
+      turned * (2.3 * angle + 0.004 * acceleration(i)) + 0.01 * Math.sin(i / 300);
+    expect(first({ angle: at, torque: limb(1) })?.torqueSign).toBe(1);
+    expect(first({ angle: at, torque: limb(-1) })?.torqueSign).toBe(-1);
+  });
+
+  it("does not tell a sign where the joint is not held anywhere", () => {
+    const pulse = (i: number) => 3 * DEG * (ramp((i - 1500) / 12) - ramp((i - 1512) / 12));
+    expect(first({ angle: pulse })?.torqueSign).toBe(0);
+  });
+
   it("reads over missing samples", () => {
     const angle = (i: number): number =>
       i % 97 === 0 ? Number.NaN : 2 * DEG * ramp((i - 1500) / 50);

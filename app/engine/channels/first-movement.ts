@@ -1,3 +1,4 @@
+import { mean, sampleSd } from "#app/engine/math/moments.ts";
 import type { Signals } from "#app/engine/types.ts";
 
 export interface FirstMovement {
@@ -8,8 +9,9 @@ export interface FirstMovement {
   /** Unsigned. */
   amplitudeDeg: number;
   /**
-   * 1 where torque rises with the angle, as it does against a spring; −1 where it falls, so that K
-   * would come out negative: the torque's sign is wrong; 0 where torque tells neither.
+   * 1 where the torque of the joint at rest rises with the angle, as it does against a spring; −1
+   * where it falls, so that K would come out negative: the torque's sign is wrong; 0 where torque
+   * tells neither.
    */
   torqueSign: 1 | -1 | 0;
 }
@@ -20,8 +22,13 @@ const BLOCK_S = 0.01;
 const FOLLOWED_S = 0.3;
 const EXCURSION_SHARE = 0.2;
 const LEFT_LEVEL_SHARE = 0.05;
-/** |correlation| of torque with angle under which torque's sign is not told. */
-const FAINT_CORRELATION = 0.3;
+/** The joint is held where its angle stays over this share of the movement. */
+const HELD_SHARE = 0.8;
+/** Before the movement, clear of its foot: there inertia works before the angle shows it. */
+const QUIET_S = [0.15, 0.05] as const;
+const LEAST_HELD_S = 0.02;
+/** A change of torque of so many SD of the torque before is told from noise. */
+const TOLD_SDS = 2;
 
 /**
  * The first clear movement about an axis, for the person who confirms signs at take-in: where the
@@ -66,9 +73,14 @@ export function firstMovement(
           direction: sign > 0 ? positive : negative,
           atS: signals.timeS[onset] as number,
           amplitudeDeg: (peak * 180) / Math.PI,
-          torqueSign: signOfRelation(
-            angle.subarray(onset, stop),
-            axis.torqueNm.subarray(onset, stop),
+          torqueSign: signAtRest(
+            axis.torqueNm.subarray(
+              Math.max(start, onset - span(QUIET_S[0])),
+              Math.max(start, onset - span(QUIET_S[1])),
+            ),
+            heldTorque(angle, axis.torqueNm, i, stop, level + HELD_SHARE * sign * peak, sign),
+            span(LEAST_HELD_S),
+            sign,
           ),
         };
       }
@@ -92,23 +104,36 @@ function medianOf(values: Float64Array): number {
   return values.slice().sort()[values.length >> 1] as number; // NaN sorts last
 }
 
-/** Sign of the correlation of x and y over the samples that both have. */
-function signOfRelation(x: Float64Array, y: Float64Array): 1 | -1 | 0 {
-  const pairs = Array.from(x, (value, i) => [value, y[i] as number] as const).filter(
-    ([a, b]) => !Number.isNaN(a) && !Number.isNaN(b),
-  );
-  const n = pairs.length;
-  const meanX = pairs.reduce((sum, [a]) => sum + a, 0) / n;
-  const meanY = pairs.reduce((sum, [, b]) => sum + b, 0) / n;
-  let xx = 0;
-  let yy = 0;
-  let xy = 0;
-  for (const [a, b] of pairs) {
-    xx += (a - meanX) ** 2;
-    yy += (b - meanY) ** 2;
-    xy += (a - meanX) * (b - meanY);
+/** Torque where the joint is held beyond `bound`: the later half, when the movement itself is over. */
+function heldTorque(
+  angle: Float64Array,
+  torque: Float64Array,
+  from: number,
+  to: number,
+  bound: number,
+  sign: number,
+): Float64Array {
+  const held: number[] = [];
+  for (let i = from; i < to; i++) {
+    if (sign * (angle[i] as number) >= sign * bound) held.push(torque[i] as number);
   }
-  const correlation = xy / Math.sqrt(xx * yy);
-  if (!(Math.abs(correlation) >= FAINT_CORRELATION)) return 0;
-  return correlation > 0 ? 1 : -1;
+  return Float64Array.from(held.slice(held.length >> 1));
+}
+
+/**
+ * Whether the torque at rest rose with the angle. Only at rest: in a fast movement a limb's inertia
+ * outweighs a soft spring many times over, and as the movement slows it pulls the other way.
+ */
+function signAtRest(
+  before: Float64Array,
+  held: Float64Array,
+  least: number,
+  sign: number,
+): 1 | -1 | 0 {
+  const known = [before, held].map((torque) => torque.filter((value) => !Number.isNaN(value)));
+  const [first, second] = known as [Float64Array, Float64Array];
+  if (first.length < least || second.length < least) return 0;
+  const change = mean(second) - mean(first);
+  if (!(Math.abs(change) > Math.max(TOLD_SDS * sampleSd(first), Number.EPSILON))) return 0;
+  return change * sign > 0 ? 1 : -1;
 }

@@ -103,6 +103,16 @@ describe("proposeChannels", () => {
     expect(found.axes.every(({ angle }) => angle?.certain === false)).toBe(true);
   });
 
+  it("gives the one column that is left to the one axis that is left, uncertain", () => {
+    const columns = ["t|ms", "ang_fe|deg", "ang_ru|deg", "trq_fe|N.m", "trq_ru|N.m"];
+    const found = propose(columns, [FE, RUD]);
+    expect(found.axes[1]).toMatchObject({
+      angle: { column: "ang_ru", certain: false },
+      torque: { column: "trq_ru", certain: false },
+    });
+    expect(named([...columns, "ang_x|deg"], [FE, RUD]).angles).toEqual(["ang_fe", null]);
+  });
+
   it("leaves an axis open that the file does not show", () => {
     expect(named(["t", "ang_fe", "trq_fe"], [FE, RUD])).toMatchObject({
       angles: ["ang_fe", null],

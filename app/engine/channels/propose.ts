@@ -1,35 +1,12 @@
 import { type Dimension, dimensionOf, readUnit } from "#app/engine/math/units.ts";
-import type { TablePreview, Unit } from "#app/engine/types.ts";
-
-export interface ProposedChannel {
-  column: string;
-  /** As the file states it, or as the steps of time tell it; null where nothing does. */
-  unit: Unit | null;
-  /** Name and unit leave no doubt: else the person should look. */
-  certain: boolean;
-}
-
-export interface ProposedTime extends ProposedChannel {
-  unit: "s" | "ms" | "us" | null;
-}
-
-export interface ProposedEmg extends ProposedChannel {
-  unit: "V" | "mV" | "uV" | null;
-  muscle: string;
-}
-
-export interface ProposedMap {
-  time: ProposedTime | null;
-  /** One entry for each of the study's axes, in their order. */
-  axes: {
-    name: string;
-    angle: ProposedChannel | null;
-    torque: ProposedChannel | null;
-    limbAngle: ProposedChannel | null;
-  }[];
-  trigger: string | null;
-  emg: ProposedEmg[];
-}
+import type {
+  ProposedChannel,
+  ProposedEmg,
+  ProposedMap,
+  ProposedTime,
+  TablePreview,
+  Unit,
+} from "#app/engine/types.ts";
 
 interface Column {
   name: string;
@@ -249,6 +226,11 @@ function proposeFor(
     clear = columns.length === 1;
   } else if (column === undefined && nameless.length === columns.length) {
     column = columns.length === axes.length ? columns[index] : undefined;
+    clear = false;
+  } else if (column === undefined && nameless.length === 1) {
+    // The other axes have theirs: what is left is this one's.
+    const left = axes.filter((axis) => !columns.some((c) => namesAxis(c, axis)));
+    column = left.length === 1 ? nameless[0] : undefined;
     clear = false;
   }
   if (column === undefined) return null;
