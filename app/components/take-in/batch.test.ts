@@ -211,10 +211,10 @@ describe("a map", () => {
     };
     const known = { ...study, rigMap: map };
     const batch = withFiles(["a.csv"], known);
-    expect(nextJob(batch, known, null)).toEqual({ kind: "head", id: "a.csv", table });
+    expect(nextJob(batch, known, null)).toMatchObject({ kind: "head", table });
     const refused = { status: "refused", sentence: "No.", line: 7 } as const;
     const second = setHead(batch, known, "a.csv", refused);
-    expect(nextJob(second, known, null)).toEqual({ kind: "head", id: "a.csv", table: AUTO });
+    expect(nextJob(second, known, null)).toMatchObject({ kind: "head", table: AUTO });
     const chosen = setTable(batch, ["a.csv"], table);
     expect(standing(setHead(chosen, known, "a.csv", refused), "a.csv", known).kind).toBe("refused");
   });
@@ -241,6 +241,22 @@ describe("what is read next", () => {
       "hash w01_firm.csv",
       "read w01_bare.csv",
     ]);
+  });
+
+  it("looks for the one axis that a file's name tells of", () => {
+    const rud = {
+      name: "RUD",
+      label: "radial–ulnar deviation",
+      positive: "ulnar deviation",
+      negative: "radial deviation",
+    };
+    const both = { ...study, axes: [...study.axes, rud] };
+    const axesOf = (name: string) => {
+      const job = nextJob(withFiles([name], both), both, null);
+      return job?.kind === "head" ? job.axes.map((axis) => axis.name) : [];
+    };
+    expect(axesOf("w01_bare_rud.csv")).toEqual(["RUD"]);
+    expect(axesOf("w01_bare.csv")).toEqual(["FE", "RUD"]);
   });
 
   it("reads again where a column changes, and not where only a sign does", () => {

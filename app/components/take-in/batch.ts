@@ -377,7 +377,13 @@ export function confirmAxis(batch: Batch, study: TakeInStudy, id: string, axisNa
 // ---------------------------------------------------------------- what is to be read next
 
 export type Job =
-  | { kind: "head"; id: string; table: TableProtocol }
+  | {
+      kind: "head";
+      id: string;
+      table: TableProtocol;
+      /** The one axis that the file's name tells of, else all of the study's. */
+      axes: { name: string; label: string }[];
+    }
   | { kind: "hash"; id: string }
   | { kind: "read"; id: string; key: string; map: RecordingMap };
 
@@ -409,7 +415,13 @@ export function nextJob(batch: Batch, study: TakeInStudy, chosenId: string | nul
     (file) => mayChange(file) && file.hash.status !== "refused" && !isElsewhere(batch, file),
   );
   const unseen = open.find((file) => file.head === null);
-  if (unseen) return { kind: "head", id: unseen.id, table: unseen.table };
+  if (unseen) {
+    const { axis } = readName(batch.pattern, study, unseen.name);
+    const axes = study.axes
+      .filter(({ name }) => axis === null || name === axis)
+      .map(({ name, label }) => ({ name, label }));
+    return { kind: "head", id: unseen.id, table: unseen.table, axes };
+  }
   const readable = open.filter((file) => file.head?.status === "read");
   const toRead = (file: BatchFile): Job | null => {
     const wanted = readingOf(batch, study, file);

@@ -1,3 +1,4 @@
+import type { ReactNode } from "react";
 import { SelectField, TextField } from "#app/components/field.tsx";
 import type { TestedSide } from "#app/domain/rig-map.ts";
 import type { TablePreview, Unit } from "#app/engine/types.ts";
@@ -25,14 +26,15 @@ export function errorOf(surface: MapSurface, field: string): string | null {
   return surface.problems.find((problem) => problem.field === field)?.sentence ?? null;
 }
 
-/** A label that is read out whole ("flexion–extension angle") and drawn short ("angle"). */
-export function spoken(before: string, shown: string, after = "") {
+/** A word at the left, its fields at the right; the fields carry their own labels for who hears them. */
+export function Line({ word, children }: { word: string; children: ReactNode }) {
   return (
-    <>
-      {before ? <span className="sr-only">{before} </span> : null}
-      {shown}
-      {after ? <span className="sr-only"> {after}</span> : null}
-    </>
+    <div className="grid grid-cols-[4.25rem_minmax(0,1fr)_5rem] items-start gap-x-2">
+      <span aria-hidden="true" className="pt-[5px] text-ink-2">
+        {word}
+      </span>
+      {children}
+    </div>
   );
 }
 
@@ -41,7 +43,10 @@ export function columnOptions({ header, units }: TablePreview) {
   return header
     .map((name, index) => ({ name, unit: units[index] ?? "" }))
     .filter(({ name }, index) => name !== "" && header.indexOf(name) === index)
-    .map(({ name, unit }) => ({ value: name, label: unit === "" ? name : `${name} (${unit})` }));
+    .map(({ name, unit }) => ({
+      value: name,
+      label: unit === "" || name.includes(unit) ? name : `${name} (${unit})`,
+    }));
 }
 
 export function unitOptions(units: readonly Unit[]) {
@@ -54,6 +59,7 @@ export function ChannelFields({
   field,
   axis,
   word,
+  shown = word,
   channel,
   units,
   placeholder = "which column",
@@ -65,34 +71,42 @@ export function ChannelFields({
   /** The axis in words; read out before the channel's own word. */
   axis: string;
   word: string;
+  /** The word where there is little room. */
+  shown?: string;
   channel: ChannelDraft;
   units: readonly Unit[];
   placeholder?: string;
   onChange: (change: Partial<ChannelDraft>) => void;
 }) {
   return (
-    <div className="grid grid-cols-[minmax(0,1fr)_5.5rem] items-start gap-x-2">
+    <Line word={shown}>
       <SelectField
         error={errorOf(surface, `${field}.column`)}
-        hint={channel.isGuess ? "A guess: look at the first rows." : undefined}
-        label={spoken(axis, word)}
-        onChange={(event) => {
-          const column = event.currentTarget.value;
-          onChange({ column, isGuess: false });
-        }}
+        label={`${axis} ${word}`}
+        labelHidden
+        onChange={(event) => onChange({ column: event.currentTarget.value, isGuess: false })}
         options={columnOptions(surface.preview)}
         placeholder={placeholder}
         value={channel.column}
       />
       <SelectField
         error={errorOf(surface, `${field}.unit`)}
-        label={spoken(`${axis} ${word}`, "unit")}
+        label={`${axis} ${word} unit`}
+        labelHidden
         onChange={(event) => onChange({ unit: event.currentTarget.value })}
         options={unitOptions(units)}
-        placeholder="which"
+        placeholder="unit"
         value={channel.unit}
       />
-    </div>
+      {channel.isGuess ? <Guess /> : null}
+    </Line>
+  );
+}
+
+/** Stands below a column that was proposed with doubt. */
+export function Guess() {
+  return (
+    <p className="col-span-2 col-start-2 text-sm text-ink-2">A guess: compare it with the rows.</p>
   );
 }
 
@@ -102,6 +116,7 @@ export function CalibrationFields({
   field,
   axis,
   word,
+  shown = word,
   channel,
   onChange,
 }: {
@@ -109,31 +124,38 @@ export function CalibrationFields({
   field: string;
   axis: string;
   word: string;
+  shown?: string;
   channel: ChannelDraft;
   onChange: (change: Partial<ChannelDraft>) => void;
 }) {
   const { side } = surface;
   return (
-    <div className="grid grid-cols-[4.5rem_4.5rem_minmax(0,1fr)] items-start gap-x-2">
+    <div className="grid grid-cols-[4.25rem_3.5rem_3.5rem_minmax(0,1fr)] items-start gap-x-2">
+      <span aria-hidden="true" className="pt-[5px] text-ink-2">
+        {shown}
+      </span>
       <TextField
-        className="text-right font-mono text-figure"
+        className="px-1.5 text-right font-mono text-figure"
         error={errorOf(surface, `${field}.gain`)}
         inputMode="decimal"
-        label={spoken(`${axis} ${word}`, "gain")}
+        label={`${axis} ${word} gain`}
+        labelHidden
         onChange={(event) => onChange({ gain: event.currentTarget.value })}
         value={channel.gain}
       />
       <TextField
-        className="text-right font-mono text-figure"
+        className="px-1.5 text-right font-mono text-figure"
         error={errorOf(surface, `${field}.offset`)}
         inputMode="decimal"
-        label={spoken(`${axis} ${word}`, "offset")}
+        label={`${axis} ${word} offset`}
+        labelHidden
         onChange={(event) => onChange({ offset: event.currentTarget.value })}
         value={channel.offset}
       />
       <SelectField
         disabled={side === null}
-        label={spoken(`${axis} ${word}`, "sign", side ? `for the ${side} side` : "")}
+        label={`${axis} ${word} sign`}
+        labelHidden
         onChange={(event) => {
           if (side === null) return;
           const sign: Sign = event.currentTarget.value === "-1" ? -1 : 1;
@@ -145,6 +167,21 @@ export function CalibrationFields({
         ]}
         value={String(side === null ? 1 : channel.sign[side])}
       />
+    </div>
+  );
+}
+
+/** What the fields of `CalibrationFields` are, once above all of them. */
+export function CalibrationHead({ side }: { side: TestedSide | null }) {
+  return (
+    <div
+      aria-hidden="true"
+      className="grid grid-cols-[4.25rem_3.5rem_3.5rem_minmax(0,1fr)] gap-x-2 text-sm text-ink-2"
+    >
+      <span />
+      <span>gain</span>
+      <span>offset</span>
+      <span>{side === null ? "sign" : `sign, ${side} side`}</span>
     </div>
   );
 }

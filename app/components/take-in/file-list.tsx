@@ -6,6 +6,7 @@ import { StateMark } from "#app/components/state-mark.tsx";
 import {
   type BatchFile,
   mayChange,
+  nameWarning,
   type Place,
   type Standing,
   setPlace,
@@ -16,7 +17,7 @@ import { standingInWords } from "./standing-words.ts";
 import type { TakeIn } from "./use-take-in.ts";
 
 const COLUMNS =
-  "xl:grid-cols-[minmax(0,1fr)_5.5rem_8.5rem_7rem_8.25rem_1.75rem] xl:gap-x-2 xl:gap-y-0";
+  "xl:grid-cols-[minmax(0,1fr)_5.75rem_8rem_7rem_8.5rem_1.5rem] xl:gap-x-2 xl:gap-y-0";
 
 /** One line a file: its name, where it belongs, and how it stands. */
 export function FileList({ takeIn, study }: { takeIn: TakeIn; study: TakeInStudy }) {
@@ -179,6 +180,8 @@ function FileRow({
               value={file.place.day}
             />
           </>
+        ) : standing.kind === "held" || standing.kind === "same" ? (
+          <span className="hidden xl:col-span-4 xl:block" />
         ) : (
           <PlaceInWords file={file} study={study} />
         )}
@@ -197,6 +200,11 @@ function FileRow({
         )}
       </div>
       <StandingLine file={file} standing={standing} takeIn={takeIn} />
+      {isOpen && nameWarning(study, file.name) !== null ? (
+        <p className="text-sm font-semibold">
+          The file’s name seems to tell who was recorded: look at it before you take it in.
+        </p>
+      ) : null}
     </li>
   );
 }
@@ -230,7 +238,7 @@ function StandingLine({
   const share = standing.kind === "sending" ? standing.share : 0;
   return (
     <>
-      <p className="flex min-h-6 flex-wrap items-center gap-x-2 text-sm">
+      <p className="mt-0.5 flex flex-wrap items-center gap-x-2 text-sm">
         {standing.kind === "ready" ? <StateMark silent state="recorded" /> : null}
         <span className={isWeighty ? "text-ink" : "text-ink-2"}>
           {isWeighty ? <Weighty words={standingInWords(standing)} /> : standingInWords(standing)}
@@ -281,12 +289,8 @@ function StandingLine({
           </>
         ) : null}
         {standing.kind === "refused" && file.sending.status === "refused" ? (
-          <Button
-            aria-label={`Try to take in ${file.name} again`}
-            onClick={() => takeIn.take([file.id])}
-            type="button"
-          >
-            Try again
+          <Button onClick={() => takeIn.take([file.id])} type="button">
+            Try again<span className="sr-only"> to take in {file.name}</span>
           </Button>
         ) : null}
       </p>

@@ -136,18 +136,17 @@ export function draftFromColumns(
   const axes = axisNames.map((name): AxisDraft => {
     const own = proposed.axes.find((axis) => axis.name === name);
     const axis = emptyAxis(name);
-    const isThere = own !== undefined && (own.angle !== null || own.torque !== null);
-    if (!isThere || !wanted.includes(name)) return { ...axis, mapped: name === only };
+    if (own === undefined || !wanted.includes(name)) return { ...axis, mapped: name === only };
     return {
       ...axis,
-      mapped: true,
+      mapped: name === only || (own.angle !== null && own.torque !== null),
       angle: filled(axis.angle, own.angle),
       torque: filled(axis.torque, own.torque),
       limbAngle: filled(axis.limbAngle, own.limbAngle),
     };
   });
-  // Nothing found: the first axis is asked for.
-  const [first] = axes;
+  // No axis is there whole: the first that shows at all is asked for.
+  const first = axes.find(({ angle, torque }) => angle.column + torque.column !== "") ?? axes[0];
   if (first && !axes.some((axis) => axis.mapped)) first.mapped = true;
   return {
     timeFrom: "column",

@@ -3,11 +3,13 @@ import { Button } from "#app/components/button.tsx";
 import { CheckField, SelectField, TextField } from "#app/components/field.tsx";
 import {
   CalibrationFields,
+  CalibrationHead,
   ChannelFields,
   columnOptions,
   errorOf,
+  Guess,
+  Line,
   type MapSurface,
-  spoken,
   unitOptions,
 } from "./channel-fields.tsx";
 import {
@@ -39,7 +41,7 @@ export function MapFields({
   onChange: ChangeMap;
 }) {
   return (
-    <div className="flex flex-col gap-3">
+    <div className="flex flex-col gap-2">
       <TimeFields map={map} onChange={onChange} surface={surface} />
       {map.axes.map((axis) => (
         <AxisFields
@@ -84,11 +86,11 @@ function TimeFields({
   ];
   const isRate = map.timeFrom === "rate";
   return (
-    <div className="grid grid-cols-[minmax(0,1fr)_5.5rem] items-start gap-x-2">
+    <Line word="time">
       <SelectField
         error={errorOf(surface, "time")}
-        hint={map.isTimeGuess && !isRate ? "A guess: look at the first rows." : undefined}
         label="Time"
+        labelHidden
         onChange={(event) => {
           const { value } = event.currentTarget;
           onChange((now) =>
@@ -103,30 +105,34 @@ function TimeFields({
       />
       {isRate ? (
         <TextField
-          className="text-right font-mono text-figure"
+          className="px-1.5 text-right font-mono text-figure"
           error={errorOf(surface, "rateHz")}
           inputMode="decimal"
           label="Rate, Hz"
+          labelHidden
           onChange={(event) => {
             const rateHz = event.currentTarget.value;
             onChange((now) => ({ ...now, rateHz }));
           }}
+          placeholder="Hz"
           value={map.rateHz}
         />
       ) : (
         <SelectField
           error={errorOf(surface, "timeUnit")}
-          label={spoken("Time", "unit")}
+          label="Time unit"
+          labelHidden
           onChange={(event) => {
             const timeUnit = event.currentTarget.value;
             onChange((now) => ({ ...now, timeUnit }));
           }}
           options={unitOptions(TIME_UNITS)}
-          placeholder="which"
+          placeholder="unit"
           value={map.timeUnit}
         />
       )}
-    </div>
+      {map.isTimeGuess && !isRate ? <Guess /> : null}
+    </Line>
   );
 }
 
@@ -155,7 +161,7 @@ function AxisFields({
     ({ gain, offset }) => gain === "1" && offset === "0",
   );
   return (
-    <fieldset className="border-t border-rule pt-2">
+    <fieldset className="border-t border-rule pt-1.5">
       <legend className="sr-only">{label}</legend>
       {isOnly ? (
         <p className="font-semibold">{label}</p>
@@ -163,7 +169,12 @@ function AxisFields({
         <CheckField
           checked={axis.mapped}
           className="font-semibold"
-          label={spoken("", label, "is in this file")}
+          label={
+            <>
+              {label}
+              <span className="sr-only"> is in this file</span>
+            </>
+          }
           onChange={(event) => {
             const mapped = event.currentTarget.checked;
             onChange((now) => ({ ...now, mapped }));
@@ -171,7 +182,7 @@ function AxisFields({
         />
       )}
       {axis.mapped ? (
-        <div className="mt-1 flex flex-col gap-2">
+        <div className="mt-1 flex flex-col gap-1.5">
           <ChannelFields
             axis={label}
             channel={axis.angle}
@@ -196,7 +207,8 @@ function AxisFields({
               <span className="sr-only">{label}: </span>gain, offset, sign, limb’s own angle
               {isPlain ? "" : " (set)"}
             </summary>
-            <div className="mt-1 flex flex-col gap-2">
+            <div className="mt-1 flex flex-col gap-1.5">
+              <CalibrationHead side={surface.side} />
               <CalibrationFields
                 axis={label}
                 channel={axis.angle}
@@ -221,6 +233,7 @@ function AxisFields({
                 placeholder="none"
                 surface={surface}
                 units={ANGLE_UNITS}
+                shown="limb"
                 word="limb’s own angle"
               />
               {hasLimb ? (
@@ -230,6 +243,7 @@ function AxisFields({
                   field={`${axis.name}.limbAngle`}
                   onChange={set("limbAngle")}
                   surface={surface}
+                  shown="limb"
                   word="limb’s own angle"
                 />
               ) : null}
@@ -257,33 +271,39 @@ function OtherChannels({
     }));
   const columns = columnOptions(surface.preview);
   return (
-    <div className="flex flex-col gap-2 border-t border-rule pt-2">
-      <SelectField
-        error={errorOf(surface, "trigger")}
-        label="Trigger"
-        onChange={(event) => {
-          const trigger = event.currentTarget.value;
-          onChange((now) => ({ ...now, trigger }));
-        }}
-        options={columns}
-        placeholder="none"
-        value={map.trigger}
-      />
+    <div className="flex flex-col gap-1.5 border-t border-rule pt-2">
+      <Line word="trigger">
+        <div className="col-span-2">
+          <SelectField
+            error={errorOf(surface, "trigger")}
+            label="Trigger"
+            labelHidden
+            onChange={(event) => {
+              const trigger = event.currentTarget.value;
+              onChange((now) => ({ ...now, trigger }));
+            }}
+            options={columns}
+            placeholder="none"
+            value={map.trigger}
+          />
+        </div>
+      </Line>
       {map.emg.map((channel, index) => (
         // biome-ignore lint/suspicious/noArrayIndexKey: muscles have no name but their place while they are being typed.
-        <fieldset className="grid grid-cols-2 items-start gap-x-2 gap-y-1" key={index}>
+        <fieldset className="flex flex-col gap-1" key={index}>
           <legend className="sr-only">Muscle {index + 1}</legend>
-          <div className="col-span-2 flex items-end gap-1">
-            <div className="grow">
-              <TextField
-                error={errorOf(surface, `emg.${index}.muscle`)}
-                label={`Muscle ${index + 1}`}
-                onChange={(event) => setEmg(index, { muscle: event.currentTarget.value })}
-                value={channel.muscle}
-              />
-            </div>
+          <Line word={index === 0 ? "EMG" : ""}>
+            <TextField
+              error={errorOf(surface, `emg.${index}.muscle`)}
+              label={`Muscle ${index + 1}`}
+              labelHidden
+              onChange={(event) => setEmg(index, { muscle: event.currentTarget.value })}
+              placeholder="muscle"
+              value={channel.muscle}
+            />
             <Button
               aria-label={`Take muscle ${index + 1} away`}
+              className="justify-self-end"
               look="quiet"
               onClick={() =>
                 onChange((now) => ({ ...now, emg: now.emg.filter((_, at) => at !== index) }))
@@ -292,38 +312,44 @@ function OtherChannels({
             >
               ×
             </Button>
-          </div>
-          <SelectField
-            error={errorOf(surface, `emg.${index}.column`)}
-            label={spoken(`Muscle ${index + 1}`, "EMG column")}
-            onChange={(event) => setEmg(index, { column: event.currentTarget.value })}
-            options={columns}
-            placeholder="which column"
-            value={channel.column}
-          />
-          <SelectField
-            error={errorOf(surface, `emg.${index}.unit`)}
-            label={spoken(`Muscle ${index + 1}`, "unit")}
-            onChange={(event) => setEmg(index, { unit: event.currentTarget.value })}
-            options={unitOptions(EMG_UNITS)}
-            placeholder="which"
-            value={channel.unit}
-          />
+          </Line>
+          <Line word="">
+            <SelectField
+              error={errorOf(surface, `emg.${index}.column`)}
+              label={`Muscle ${index + 1} column`}
+              labelHidden
+              onChange={(event) => setEmg(index, { column: event.currentTarget.value })}
+              options={columns}
+              placeholder="which column"
+              value={channel.column}
+            />
+            <SelectField
+              error={errorOf(surface, `emg.${index}.unit`)}
+              label={`Muscle ${index + 1} unit`}
+              labelHidden
+              onChange={(event) => setEmg(index, { unit: event.currentTarget.value })}
+              options={unitOptions(EMG_UNITS)}
+              placeholder="unit"
+              value={channel.unit}
+            />
+          </Line>
         </fieldset>
       ))}
-      <div>
-        <Button
-          onClick={() =>
-            onChange((now) => ({
-              ...now,
-              emg: [...now.emg, { muscle: "", column: "", unit: "mV" }],
-            }))
-          }
-          type="button"
-        >
-          Add a muscle
-        </Button>
-      </div>
+      <Line word={map.emg.length === 0 ? "EMG" : ""}>
+        <div>
+          <Button
+            onClick={() =>
+              onChange((now) => ({
+                ...now,
+                emg: [...now.emg, { muscle: "", column: "", unit: "mV" }],
+              }))
+            }
+            type="button"
+          >
+            Add a muscle
+          </Button>
+        </div>
+      </Line>
     </div>
   );
 }

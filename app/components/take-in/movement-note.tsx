@@ -65,30 +65,21 @@ export function MovementNote({
             Confirmed for the {side} side.
           </span>
         ) : (
-          <Button
-            aria-label={`Confirm ${axis.label} for the ${side} side`}
-            onClick={onConfirm}
-            type="button"
-          >
+          <Button onClick={onConfirm} type="button">
             Confirm for the {side} side
+            <span className="sr-only">: {axis.label}</span>
           </Button>
         )}
         {words.otherWay ? (
-          <Button
-            aria-label={`${axis.label} went towards ${words.otherWay}`}
-            onClick={onTurn}
-            type="button"
-          >
+          <Button onClick={onTurn} type="button">
             It went towards {words.otherWay}
+            <span className="sr-only">: {axis.label}</span>
           </Button>
         ) : null}
         {words.stiffness === "negative" ? (
-          <Button
-            aria-label={`Turn the torque of ${axis.label} round`}
-            onClick={onTurnTorque}
-            type="button"
-          >
+          <Button onClick={onTurnTorque} type="button">
             Turn the torque round
+            <span className="sr-only">: {axis.label}</span>
           </Button>
         ) : null}
       </div>

@@ -2,7 +2,7 @@ import type { TablePreview } from "#app/engine/types.ts";
 
 /** Of a table with very many columns the first are shown; all can be mapped. */
 const MOST_COLUMNS = 60;
-const ROWS = 5;
+const ROWS = 4;
 
 /** The first rows as they stand in the file, and above each column what it is mapped to. */
 export function PreviewTable({
@@ -27,7 +27,7 @@ export function PreviewTable({
     <>
       {/* biome-ignore lint/a11y/noNoninteractiveTabindex: what scrolls must be reachable by keyboard. */}
       <section aria-label={`First rows of ${fileName}`} className="wide" tabIndex={0}>
-        <table className="rows preview">
+        <table className="rows [&_:is(td,th)]:py-px [&_thead_tr:first-child_th]:border-b-0">
           <thead>
             <tr>
               {columns.map(({ key, role }) => (

@@ -79,7 +79,14 @@ export function TakeInPage({
       >
         {chosen ? (
           <FileDrawer
-            actions={<NextButton all={all} takeIn={takeIn} />}
+            actions={
+              <>
+                <NextButton all={all} takeIn={takeIn} />
+                <a className="link inline-flex min-h-[30px] items-center lg:hidden" href="#main">
+                  Back to the list
+                </a>
+              </>
+            }
             file={chosen}
             study={study}
             takeIn={takeIn}
@@ -95,7 +102,7 @@ export function TakeInPage({
 function PatternField({ study, takeIn }: { study: TakeInStudy; takeIn: TakeIn }) {
   const { pattern } = takeIn.batch;
   return (
-    <div className="w-full max-w-96">
+    <div className="w-full sm:w-80">
       <div className="flex items-baseline gap-2">
         <span aria-hidden="true" className="shrink-0 text-ink-2">
           file names

@@ -182,7 +182,7 @@ async function runJob(
   try {
     switch (job.kind) {
       case "head": {
-        const head = await read.lookAtHead(blob, job.table, namesOf(study));
+        const head = await read.lookAtHead(blob, job.table, job.axes);
         return (now) => setHead(now, study, job.id, head);
       }
       case "hash": {
@@ -220,10 +220,6 @@ async function runJob(
           setReading(now, job.id, job.key, { status: "refused", sentence, line: null });
     }
   }
-}
-
-function namesOf(study: TakeInStudy): { name: string; label: string }[] {
-  return study.axes.map(({ name, label }) => ({ name, label }));
 }
 
 /** What a browser or a worker throws, in a sentence that names the file and what to do. */
