@@ -50,7 +50,7 @@ export function Provenance({
           </Line>
           {Object.entries(result.rig).map(([axis, rig]) => (
             <Line key={axis} label={`The rig’s own, ${axis}`}>
-              <span className="num">
+              <span className="font-mono text-sm">
                 {TERMS.map(
                   (term) => `${term} ${formatDigits(rig[term], 3)} ${TERM_UNITS[term]}`,
                 ).join(", ")}

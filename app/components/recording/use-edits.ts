@@ -91,6 +91,7 @@ export function useEdits(storageKey: string, base: EditBase | null): Edits {
     setRestored(0);
   }, []);
   const saved = useCallback((fitId: string, windows: readonly SavedWindow[]) => {
+    setRestored(0);
     setList((held) => {
       if (held === null) return null;
       replaced.current.add(held.baseFitId);

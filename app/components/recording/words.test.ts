@@ -1,5 +1,5 @@
 import { describe, expect, it } from "vitest";
-import { formatMs, formatVaf, reasonInWords, spanInWords, todoOf } from "./words.ts";
+import { axisFlags, formatMs, formatVaf, reasonInWords, spanInWords, todoOf } from "./words.ts";
 
 describe("words beside numbers", () => {
   it("writes milliseconds without zeros that say nothing", () => {
@@ -9,6 +9,21 @@ describe("words beside numbers", () => {
 
   it("never rounds a VAF up to 100", () => {
     expect([99.96, 99.9, 87.24, null].map(formatVaf)).toEqual(["99.96", "99.9", "87.2", "–"]);
+    expect([99.9961, 100].map(formatVaf)).toEqual(["99.996", "100.0"]);
+  });
+
+  it("says for which direction a flag holds, where it does not hold for all", () => {
+    const flag = { code: "low_vaf", text: "It fits badly." };
+    const both = axisFlags([
+      { direction: "extension", flags: [flag] },
+      { direction: "flexion", flags: [flag] },
+    ]);
+    expect(both).toEqual([flag]);
+    const one = axisFlags([
+      { direction: "extension", flags: [flag] },
+      { direction: "flexion", flags: [] },
+    ]);
+    expect(one[0]?.text).toBe("Towards extension: It fits badly.");
   });
 
   it("says what to do about a flag, and nothing about one it does not know", () => {

@@ -31,7 +31,33 @@ export function spanInWords([start, end]: readonly [number, number]): string {
   return withUnit(formatRange(formatMs(start), formatMs(end)), "ms");
 }
 
-/** VAF in percent: one decimal, two where one would round it to 100. */
+/** VAF in percent: one decimal, as many more as keep a fit short of 100 from being written so. */
 export function formatVaf(pct: number | null): string {
-  return formatNumber(pct, pct !== null && pct >= 99.95 && pct < 100 ? 2 : 1);
+  for (let decimals = 1; decimals < 4; decimals++) {
+    const text = formatNumber(pct, decimals);
+    if (pct === null || pct >= 100 || Number(text) < 100) return text;
+  }
+  return formatNumber(pct, 4);
+}
+
+/**
+ * Flags of all windows of an axis together, each once: one that holds for some directions only
+ * says for which.
+ */
+export function axisFlags(
+  pooled: readonly { direction: string; flags: readonly Flag[] }[],
+): Flag[] {
+  const said = new Map<string, { flag: Flag; directions: string[] }>();
+  for (const { direction, flags } of pooled) {
+    for (const flag of flags) {
+      const held = said.get(flag.code + flag.text);
+      if (held) held.directions.push(direction);
+      else said.set(flag.code + flag.text, { flag, directions: [direction] });
+    }
+  }
+  return [...said.values()].map(({ flag, directions }) =>
+    directions.length === pooled.length
+      ? flag
+      : { code: flag.code, text: `Towards ${directions.join(" and ")}: ${flag.text}` },
+  );
 }

@@ -38,6 +38,7 @@ import { type EnginePort, useFits, useFollow, useStretch } from "./use-following
 import { useKeys, useSingleKeys } from "./use-keys.ts";
 import { panned, rangeOf, showing, type View, windowView, zoomed } from "./view.ts";
 import { WindowDrawer } from "./window-drawer.tsx";
+import { axisFlags } from "./words.ts";
 
 const NEAR_STEP = 1.5;
 /** Wider than this the time axis is that of the recording. */
@@ -59,6 +60,7 @@ export function Workbench({
   onSave,
   onProblem,
   head,
+  foot,
   theirs,
 }: {
   port: EnginePort;
@@ -78,6 +80,7 @@ export function Workbench({
   onSave: (windows: readonly SavedWindow[], result: Result) => void;
   onProblem: (error: unknown) => void;
   head: ReactNode;
+  foot: ReactNode;
   /** Another person's newer fit, where one's own edits were made on an older one. */
   theirs: OneState | null;
 }) {
@@ -328,9 +331,7 @@ export function Workbench({
   const commonFlags = useMemo(
     () => [
       ...opened.flags,
-      ...(fits.lastResult?.pooled ?? [])
-        .filter((each) => each.axis === axis)
-        .flatMap((each) => each.flags),
+      ...axisFlags((fits.lastResult?.pooled ?? []).filter((each) => each.axis === axis)),
     ],
     [opened, fits.lastResult, axis],
   );
@@ -344,7 +345,7 @@ export function Workbench({
   const toUndo = edits.list === null ? null : editToUndo(edits.list);
   const toRedo = edits.list === null ? null : editToRedo(edits.list);
 
-  const foot = (
+  const links = (
     <>
       <button
         className="min-h-6 underline decoration-edge underline-offset-3"
@@ -476,10 +477,10 @@ export function Workbench({
             )}
           </fieldset>
           <div className="absolute bottom-0 left-[104px] hidden gap-2 text-sm text-ink-2 sm:flex">
-            {foot}
+            {links}
           </div>
         </div>
-        <div className="flex gap-2 text-sm text-ink-2 sm:hidden">{foot}</div>
+        <div className="flex gap-2 text-sm text-ink-2 sm:hidden">{links}</div>
         <div className="my-3 flex flex-wrap items-center gap-2">
           <Button
             disabled={chosenIndex <= 0}
@@ -554,6 +555,7 @@ export function Workbench({
           onChoose={(next) => choose(next - 1)}
           windows={residuals}
         />
+        {foot}
       </div>
       <aside
         aria-label="The chosen window"

@@ -14,11 +14,12 @@ import { Provenance } from "#app/components/fit/provenance.tsx";
 import { ResidualSection } from "#app/components/fit/residual-section.tsx";
 import { type FitWindowRow, WindowTable } from "#app/components/fit/window-table.tsx";
 import { Notice } from "#app/components/notice.tsx";
-import { PageHead } from "#app/components/page-head.tsx";
 import { AxisSwitch } from "#app/components/recording/axis-switch.tsx";
 import { FlagSummary } from "#app/components/recording/flag-summary.tsx";
 import { CannotOpen } from "#app/components/recording/opening.tsx";
+import { RecordingHead } from "#app/components/recording/recording-head.tsx";
 import { ResidualList } from "#app/components/recording/residual-list.tsx";
+import { axisFlags } from "#app/components/recording/words.ts";
 import { StateMark } from "#app/components/state-mark.tsx";
 import { getFit } from "#app/db/fits.server.ts";
 import { findHandsOnRecordings, hasOpenedResiduals } from "#app/db/reviews.server.ts";
@@ -26,7 +27,7 @@ import { describeChoices, parseProtocol } from "#app/domain/protocol.ts";
 import { countOf, formatMoment, formatNumber } from "#app/domain/quantity.ts";
 import { DECISIONS, whyNotReviewer } from "#app/domain/review.ts";
 import { may } from "#app/domain/role.ts";
-import type { Flag, WindowDrawing } from "#app/engine/types.ts";
+import type { WindowDrawing } from "#app/engine/types.ts";
 import type { RecordingSource } from "#app/workers/engine.api.ts";
 import { problemOf, useEngine } from "#app/workers/use-engine.ts";
 import { noteRecordingOpened } from "#app/workflows/note-opening.server.ts";
@@ -261,10 +262,7 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
   );
   const torque = useMemo(() => torqueOf(drawings, chosen), [drawings, chosen]);
   const pooled = result.pooled.filter((each) => each.axis === axis);
-  const commonFlags = commonOf([
-    ...(result.recordings[0]?.flags ?? []),
-    ...pooled.flatMap((each) => each.flags),
-  ]);
+  const commonFlags = [...(result.recordings[0]?.flags ?? []), ...axisFlags(pooled)];
   const flagsAbove = new Set(commonFlags.map(({ code }) => code));
   const setAside = rows.filter(({ window }) => !window.included).length;
 
@@ -272,7 +270,7 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
     <div className="grid min-h-dvh lg:grid-cols-[minmax(0,1fr)_288px] xl:grid-cols-[minmax(0,1fr)_312px]">
       <div className="flex min-w-0 flex-col gap-6 px-5 pt-4 pb-10">
         <div>
-          <PageHead
+          <RecordingHead
             actions={
               <ButtonLink to={`/recordings/${shown.recording.id}`}>
                 {shown.may.fit ? "Open the recording to trim" : "Open the recording"}
@@ -297,7 +295,6 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
                       {VERIFICATION_WORDS[fit.verification]}
                     </span>,
                   ]),
-              ...(shown.origin ? [shown.origin] : []),
             ]}
             title={titleOf(shown)}
           />
@@ -408,6 +405,7 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
           protocolSha256={fit.protocolSha256}
           result={result}
         />
+        {shown.origin ? <p className="text-sm text-ink-2">{shown.origin}</p> : null}
       </div>
       <aside
         aria-label="State of this fit"
@@ -426,6 +424,13 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
             <section aria-label="State">
               <h2 className="mb-1">State</h2>
               <p>{stateInWords(shown)}</p>
+              {shown.may.review ? (
+                <p className="mt-1">
+                  <Link className="link" to="/reviews">
+                    Go on to the fits that wait
+                  </Link>
+                </p>
+              ) : null}
               {shown.may.submit &&
               fit.supersededAt === null &&
               (fit.state === "draft" || fit.state === "returned") ? (
@@ -515,10 +520,6 @@ function rowsOf({ fit }: Shown, axis: string): Row[] {
     });
   }
   return rows;
-}
-
-function commonOf(flags: readonly Flag[]): Flag[] {
-  return [...new Map(flags.map((flag) => [flag.code + flag.text, flag])).values()];
 }
 
 /** The chosen window's torque from its baseline: what the model says, term by term. */

@@ -14,9 +14,9 @@ import { Button, ButtonLink } from "#app/components/button.tsx";
 import { ErrorScreen } from "#app/components/error-screen.tsx";
 import { SelectField } from "#app/components/field.tsx";
 import { Notice } from "#app/components/notice.tsx";
-import { PageHead } from "#app/components/page-head.tsx";
 import { AxisSwitch } from "#app/components/recording/axis-switch.tsx";
 import { CannotOpen, Opening } from "#app/components/recording/opening.tsx";
+import { RecordingHead } from "#app/components/recording/recording-head.tsx";
 import { type EditBase, editsKey, useEdits } from "#app/components/recording/use-edits.ts";
 import { spanInWords } from "#app/components/recording/words.ts";
 import { Workbench } from "#app/components/recording/workbench.tsx";
@@ -244,7 +244,7 @@ export default function RecordingPage({ loaderData }: Route.ComponentProps) {
   const canSave = edits.unsaved > 0 || current === null || isNewProtocol;
 
   const head = (
-    <RecordingHead
+    <Head
       axis={shownAxis}
       onAxis={setAxis}
       shown={shown}
@@ -254,7 +254,7 @@ export default function RecordingPage({ loaderData }: Route.ComponentProps) {
       {shown.may.submit && current !== null ? (
         <SubmitButton canSave={canSave} current={current} onDone={look} />
       ) : null}
-    </RecordingHead>
+    </Head>
   );
 
   if (engine.status === "ready" && opened !== null && protocol !== null && windows !== null) {
@@ -285,6 +285,11 @@ export default function RecordingPage({ loaderData }: Route.ComponentProps) {
               />
             ) : null}
           </>
+        }
+        foot={
+          shown.study.origin ? (
+            <p className="mt-6 text-sm text-ink-2">{shown.study.origin}</p>
+          ) : null
         }
         isSaving={saving.isBusy}
         key={engine.source.protocolSha256}
@@ -415,7 +420,7 @@ function useSaving(edits: ReturnType<typeof useEdits>, look: () => void): Saving
   };
 }
 
-function RecordingHead({
+function Head({
   shown,
   axis,
   onAxis,
@@ -434,7 +439,7 @@ function RecordingHead({
   const submit = useSubmit();
   const state = current?.state ?? (windowCount > 0 ? "windowed" : "recorded");
   return (
-    <PageHead
+    <RecordingHead
       actions={
         <>
           {protocols.length > 1 ? (
@@ -460,7 +465,7 @@ function RecordingHead({
         <a
           className="num hover:underline"
           download
-          href={`/recordings/${recording.id}/raw?download`}
+          href={`/recordings/${recording.id}/raw?download=1`}
           key="file"
         >
           {recording.fileName}
@@ -487,7 +492,6 @@ function RecordingHead({
               </span>,
             ]
           : []),
-        ...(shown.study.origin ? [shown.study.origin] : []),
       ]}
       title={titleOf(shown)}
     />
