@@ -2,6 +2,8 @@ import type { Config } from "@react-router/dev/config";
 
 export default {
   ssr: true,
+  // The list of routes is small. Asked for later, it would be missing when the connection is.
+  routeDiscovery: { mode: "initial" },
   future: {
     v8_middleware: true,
     v8_passThroughRequests: true,

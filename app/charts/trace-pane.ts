@@ -35,6 +35,7 @@ const MODEL_STRENGTH = 0.75;
 const DOT_RADIUS_PX = 1.7;
 /** Dots nearer than this run together: a line shows more. */
 const CLOSEST_DOTS_PX = 1.5;
+const EDGE_LABEL_PX = 8;
 const ZERO: [number, number] = [0, 0];
 
 /** One canvas of a stack of traces. The gutter for tick labels is at its left. */
@@ -113,7 +114,7 @@ export class TracePane {
     }
     const range = threeTicks(low, high);
     // Room for half a label where a tick stands at the very edge.
-    const edge = (range.high - range.low) * 0.06;
+    const edge = (range.high - range.low) * Math.min(0.2, EDGE_LABEL_PX / this.#plot.height);
     const [first, , last] = range.ticks as [number, number, number];
     return {
       low: Math.min(range.low, first - edge),
