@@ -4,6 +4,7 @@ import {
   type FigureMean,
   type FigureParticipant,
   MARGIN,
+  nameLines,
   participantGeometry,
 } from "./participant-geometry.ts";
 import { useWidth } from "./use-width.ts";
@@ -17,7 +18,7 @@ export function ParticipantFigure({
   conditions,
   participants,
   means,
-  height = 264,
+  height = 288,
 }: {
   /** Says what is drawn, for those who do not see it. */
   title: string;
@@ -62,10 +63,10 @@ export function ParticipantFigure({
         {breaks.map((at) => (
           <g fill="var(--ink-2)" fontSize="12" key={at.x}>
             <path d={`M${at.x} ${MARGIN.top}V${bottom}`} stroke="var(--edge)" />
-            <text textAnchor="end" x={at.x - 8} y={MARGIN.top + 12}>
+            <text textAnchor="end" x={at.x - 8} y={MARGIN.top - 8}>
               {at.left}
             </text>
-            <text x={at.x + 8} y={MARGIN.top + 12}>
+            <text x={at.x + 8} y={MARGIN.top - 8}>
               {at.right}
             </text>
           </g>
@@ -129,7 +130,7 @@ export function ParticipantFigure({
   );
 }
 
-/** About 6.5 px a letter at 12 px: a name that would meet its neighbour is cut, whole in its title. */
+/** Whole in its title where it is cut. */
 function ConditionName({
   name,
   width,
@@ -141,12 +142,15 @@ function ConditionName({
   x: number;
   y: number;
 }) {
-  const letters = Math.max(3, Math.floor(width / 6.5));
-  const shown = name.length > letters ? `${name.slice(0, letters - 1)}…` : name;
+  const lines = nameLines(name, width);
   return (
     <text fill="var(--ink)" fontSize="12" textAnchor="middle" x={x} y={y}>
-      {shown}
-      {shown === name ? null : <title>{name}</title>}
+      {lines.map((line, place) => (
+        <tspan dy={place === 0 ? 0 : 14} key={line} x={x}>
+          {line}
+        </tspan>
+      ))}
+      {lines.join(" ") === name ? null : <title>{name}</title>}
     </text>
   );
 }

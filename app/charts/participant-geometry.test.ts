@@ -3,6 +3,7 @@ import {
   conditionFills,
   type FigureCondition,
   type FigureParticipant,
+  nameLines,
   participantGeometry,
 } from "./participant-geometry.ts";
 
@@ -102,5 +103,17 @@ describe("fills of the means", () => {
     const fills = conditionFills(many);
     expect(fills[0]).toBe("var(--step-1)");
     expect(fills[8]).toBe("var(--step-5)");
+  });
+});
+
+describe("a condition's name below its place", () => {
+  it("stands in one line where it fits, else breaks between words", () => {
+    expect(nameLines("tight", 60)).toEqual(["tight"]);
+    expect(nameLines("tight, grip", 60)).toEqual(["tight,", "grip"]);
+  });
+
+  it("is cut where it does not fit even so", () => {
+    expect(nameLines("unreasonably", 40)).toEqual(["unrea…"]);
+    expect(nameLines("wide and unreasonably", 60)).toEqual(["wide and", "unreason…"]);
   });
 });

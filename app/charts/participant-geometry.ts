@@ -62,7 +62,7 @@ export interface ParticipantGeometry {
   participants: { code: string; segments: Segment[]; dots: Dot[] }[];
 }
 
-export const MARGIN = { left: 44, right: 4, top: 8, bottom: 28 } as const;
+export const MARGIN = { left: 44, right: 4, top: 22, bottom: 40 } as const;
 /** A point that no line joins stands beside the mean, not beneath it. */
 const ASIDE_PX = 12;
 
@@ -178,4 +178,20 @@ export function conditionFills(conditions: readonly FigureCondition[]): string[]
         : 1 + Math.floor((4 * place) / Math.max(1, ordered.length - 1));
     return `var(--step-${Math.min(5, Math.max(1, step))})`;
   });
+}
+
+/** Width of a letter of a condition's name at 12 px, about. */
+const LETTER_PX = 6.5;
+
+/**
+ * A condition's name as it fits below its place: one line or two, cut where even two do not hold it.
+ *
+ * @param width  px
+ */
+export function nameLines(name: string, width: number): string[] {
+  const most = Math.max(3, Math.floor(width / LETTER_PX));
+  const cut = (text: string) => (text.length > most ? `${text.slice(0, most - 1)}…` : text);
+  if (name.length <= most) return [name];
+  const at = name.lastIndexOf(" ", most);
+  return at <= 0 ? [cut(name)] : [name.slice(0, at), cut(name.slice(at + 1))];
 }

@@ -12,7 +12,7 @@ export function FlagNote({
   children?: ReactNode;
 }) {
   return (
-    <div className="my-2.5 border-l-2 border-ink pl-2.5">
+    <div className="mt-2.5 mb-4 border-l-2 border-ink pl-2.5">
       <p className="font-semibold">{text}</p>
       {todo || children ? (
         <p className="text-sm text-ink-2">

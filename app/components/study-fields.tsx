@@ -38,7 +38,9 @@ function Row({
     >
       {children}
       {actions ? (
-        <div className={`flex items-center gap-1 ${first ? "md:pt-6" : ""}`}>{actions}</div>
+        <div className={`flex items-center gap-1 self-end md:self-start ${first ? "md:pt-6" : ""}`}>
+          {actions}
+        </div>
       ) : null}
     </div>
   );
@@ -72,7 +74,9 @@ export function ConditionFields({ bind, first = true, actions }: RowProps) {
   const { defaultValue: isActive, ...active } = bind("isActive");
   return (
     <Row actions={actions} columns="md:grid-cols-[2fr_5rem_6rem_6rem_5rem_9rem]" first={first}>
-      <TextField {...bind("name")} label="Condition" labelHidden={labelHidden} maxLength={60} />
+      <div className="col-span-2 md:col-span-1">
+        <TextField {...bind("name")} label="Condition" labelHidden={labelHidden} maxLength={60} />
+      </div>
       <TextField
         {...bind("level")}
         className="num"

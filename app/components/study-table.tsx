@@ -15,7 +15,9 @@ export function StudyTable({
         <thead>
           <tr>
             <th scope="col">study</th>
-            <th scope="col">rig</th>
+            <th className="max-md:hidden" scope="col">
+              rig
+            </th>
             <th className="r" scope="col">
               participants
             </th>
@@ -32,7 +34,7 @@ export function StudyTable({
         <tbody>
           {studies.map((study) => (
             <tr key={study.id}>
-              <th className="min-w-48" scope="row">
+              <th className="min-w-40" scope="row">
                 <Link className="link" to={`/studies/${study.id}`}>
                   {study.name}
                 </Link>
@@ -40,7 +42,7 @@ export function StudyTable({
                   <span className="unit block whitespace-normal">{study.origin}</span>
                 ) : null}
               </th>
-              <td className="text-ink-2">{study.rigName ?? "–"}</td>
+              <td className="text-ink-2 max-md:hidden">{study.rigName ?? "–"}</td>
               <td className="r num">{study.participants}</td>
               <td className="r num">{study.recordings}</td>
               <CountCell count={recordingsWithoutFit(study)} />

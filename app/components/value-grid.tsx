@@ -71,7 +71,7 @@ export function ValueGrid({
 
   return (
     <div className="wide">
-      <table className="rows [&_:is(th,td)]:pr-3.5">
+      <table className="rows [&_:is(th,td)]:pr-4 [&_td:first-of-type]:pl-3 [&_[scope=row]]:sticky [&_[scope=row]]:left-0 [&_[scope=row]]:z-1 [&_[scope=row]]:bg-paper">
         <caption className="sr-only">{caption}</caption>
         <thead>
           <tr>
@@ -87,12 +87,12 @@ export function ValueGrid({
         </thead>
         <tbody>
           {rows.map((row) => (
-            <tr className="hover:bg-hover" key={row.participantId}>
+            <tr key={row.participantId}>
               <th className="num" scope="row">
                 {row.code}
               </th>
               {row.cells.map((cell, place) => (
-                <td className="r num relative" key={conditions[place]?.id ?? place}>
+                <td className="r num" key={conditions[place]?.id ?? place}>
                   {cell === null ? (
                     <>
                       <span aria-hidden="true" className="text-ink-2">
@@ -152,9 +152,12 @@ export function ValueGrid({
                       : undefined
                   }
                 >
-                  {change && change.n >= 2
-                    ? `${formatChange(shown(change.mean), decimals)}${half(change.interval)}`
-                    : null}
+                  {change && change.n >= 2 ? (
+                    <>
+                      {formatChange(shown(change.mean), decimals)}
+                      {half(change.interval)}
+                    </>
+                  ) : null}
                 </td>
               ))}
             </tr>
@@ -171,7 +174,7 @@ function ValueText({ cell, children }: { cell: GridValue; children: ReactNode })
   const number = (
     <>
       {cell.state === "approved" ? null : (
-        <span className="absolute top-1 left-[-6px] scale-75">
+        <span className="absolute right-[calc(100%-2px)] scale-70">
           <StateMark state={cell.state} />
         </span>
       )}
@@ -181,13 +184,15 @@ function ValueText({ cell, children }: { cell: GridValue; children: ReactNode })
   );
   return cell.recordingIds.length === 1 && only ? (
     <Link
-      className="hover:underline hover:decoration-edge hover:underline-offset-3"
+      className="relative hover:underline hover:decoration-edge hover:underline-offset-3"
       title={title}
       to={`/recordings/${only}`}
     >
       {number}
     </Link>
   ) : (
-    <span title={title}>{number}</span>
+    <span className="relative" title={title}>
+      {number}
+    </span>
   );
 }

@@ -79,7 +79,7 @@ describe("rounding to what the interval supports", () => {
 });
 
 describe("units", () => {
-  it("goes to thousandths where every value of the column is below 0.1", () => {
+  it("goes to thousandths where every value of the column is below 0.3", () => {
     expect(scaleOf("I", [0.00315, null, 0.00301])).toEqual({ factor: 1000, unit: "10⁻³ kg·m²" });
     expect(scaleOf("B", [0.05, 0.6])).toEqual({ factor: 1, unit: "N·m·s/rad" });
     expect(scaleOf("K", [])).toEqual({ factor: 1, unit: "N·m/rad" });

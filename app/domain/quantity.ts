@@ -19,13 +19,13 @@ export interface Scale {
 }
 
 /**
- * SI, or 10⁻³ of it where every value is below 0.1: so that 0.00315 kg·m² and 0.00032 kg·m² stand as
+ * SI, or 10⁻³ of it where every value is below 0.3: so that 0.00315 kg·m² and 0.00032 kg·m² stand as
  * 3.15 and 0.32 in one column.
  */
 export function scaleOf(term: Term, values: readonly (number | null)[]): Scale {
   const unit = TERM_UNITS[term];
   const largest = values.reduce<number>((most, v) => Math.max(most, Math.abs(v ?? 0)), 0);
-  return largest > 0 && largest < 0.1
+  return largest > 0 && largest < 0.3
     ? { factor: 1000, unit: `10⁻³${THIN_SPACE}${unit}` }
     : { factor: 1, unit };
 }
@@ -121,9 +121,14 @@ export function formatDay(at: number): string {
   return `${date.getUTCDate()} ${MONTHS[date.getUTCMonth()]} ${date.getUTCFullYear()}`;
 }
 
+/** "09:05 UTC". */
+export function formatTime(at: number): string {
+  return `${new Date(at).toISOString().slice(11, 16)} UTC`;
+}
+
 /** "14 Oct 2026, 09:05 UTC". */
 export function formatMoment(at: number): string {
-  return `${formatDay(at)}, ${new Date(at).toISOString().slice(11, 16)} UTC`;
+  return `${formatDay(at)}, ${formatTime(at)}`;
 }
 
 /** "1 window", "6 windows". */

@@ -117,12 +117,14 @@ function Section({ id, title, children }: { id: string; title: string; children:
 function TaskLine({ task }: { task: Task }) {
   const { text, to, mark } = wordsOfTask(task);
   return (
-    <li className="flex flex-wrap items-center gap-x-3 border-b border-rule py-1 hover:bg-hover">
-      <span className="w-5 shrink-0">{mark}</span>
-      <Link className="link inline-flex min-h-6 items-center" to={to}>
-        {text}
-      </Link>
-      <span className="text-ink-2">{task.studyName}</span>
+    <li className="grid grid-cols-[20px_1fr] gap-x-3 border-b border-rule py-1 hover:bg-hover">
+      <span className="pt-0.5">{mark}</span>
+      <span className="flex flex-wrap items-center gap-x-3">
+        <Link className="link inline-flex min-h-6 items-center" to={to}>
+          {text}
+        </Link>
+        <span className="text-ink-2">{task.studyName}</span>
+      </span>
     </li>
   );
 }

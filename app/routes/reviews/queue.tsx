@@ -6,7 +6,7 @@ import { Empty } from "#app/components/empty.tsx";
 import { ErrorScreen } from "#app/components/error-screen.tsx";
 import { PageHead } from "#app/components/page-head.tsx";
 import { listSubmitted, type SubmittedFit } from "#app/db/reviews.server.ts";
-import { countOf, formatMoment } from "#app/domain/quantity.ts";
+import { countOf, formatDay, formatTime } from "#app/domain/quantity.ts";
 import { may } from "#app/domain/role.ts";
 import type { Route } from "./+types/queue.ts";
 
@@ -77,9 +77,15 @@ function FitTable({ fits, mayReview }: { fits: SubmittedFit[]; mayReview: boolea
         <thead>
           <tr>
             <th scope="col">fit of</th>
-            <th scope="col">study</th>
-            <th scope="col">protocol</th>
-            <th scope="col">saved by</th>
+            <th className="max-md:hidden" scope="col">
+              study
+            </th>
+            <th className="max-md:hidden" scope="col">
+              protocol
+            </th>
+            <th className="max-md:hidden" scope="col">
+              saved by
+            </th>
             <th scope="col">submitted</th>
             {mayReview ? <th scope="col">residuals</th> : null}
           </tr>
@@ -101,12 +107,15 @@ function FitTable({ fits, mayReview }: { fits: SubmittedFit[]; mayReview: boolea
                   )}
                 </span>
               </th>
-              <td>{fit.studyName}</td>
-              <td className="num">{fit.protocolNumber}</td>
-              <td>{fit.savedByName}</td>
-              <td className="num">{formatMoment(fit.submittedAt)}</td>
+              <td className="max-md:hidden">{fit.studyName}</td>
+              <td className="num max-md:hidden">{fit.protocolNumber}</td>
+              <td className="max-md:hidden">{fit.savedByName}</td>
+              <td className="num">
+                {formatDay(fit.submittedAt)}
+                <span className="max-md:hidden">, {formatTime(fit.submittedAt)}</span>
+              </td>
               {mayReview ? (
-                <td className="min-w-40 text-ink-2">
+                <td className="text-ink-2 md:min-w-40">
                   {fit.whyNot ?? (fit.hasOpenedResiduals ? "opened" : "not opened yet")}
                 </td>
               ) : null}

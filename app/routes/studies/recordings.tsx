@@ -153,16 +153,18 @@ function RecordingTable({
             <th scope="col">condition</th>
             {severalPostures ? <th scope="col">posture</th> : null}
             <th scope="col">state</th>
-            <th className="r" scope="col">
+            <th className="r max-md:hidden" scope="col">
               visit
             </th>
-            <th className="r" scope="col">
+            <th className="r max-md:hidden" scope="col">
               length
             </th>
-            <th className="r" scope="col">
+            <th className="r max-md:hidden" scope="col">
               size
             </th>
-            <th scope="col">taken in by</th>
+            <th className="max-md:hidden" scope="col">
+              taken in by
+            </th>
           </tr>
         </thead>
         <tbody>
@@ -182,12 +184,12 @@ function RecordingTable({
               <td className="whitespace-nowrap">
                 <RecordingState recording={one} />
               </td>
-              <td className="r num">{one.day}</td>
-              <td className="r num">
+              <td className="r num max-md:hidden">{one.day}</td>
+              <td className="r num max-md:hidden">
                 {one.facts ? `${formatDigits(one.facts.durationS, 3)} s` : "–"}
               </td>
-              <td className="r num">{formatBytes(one.sizeBytes)}</td>
-              <td className="whitespace-nowrap">
+              <td className="r num max-md:hidden">{formatBytes(one.sizeBytes)}</td>
+              <td className="whitespace-nowrap max-md:hidden">
                 {one.takenInByName}, <span className="num">{formatDay(one.takenInAt)}</span>
               </td>
             </tr>
