@@ -363,7 +363,11 @@ describe("how a file stands", () => {
       sentBytes: 142,
       askedBytes: 200,
       underWay: ["w01_bare.csv", "w01_firm.csv"],
+      // What is being verified has arrived: the server goes on by itself.
+      unsent: ["w01_bare.csv"],
     });
+    batch = setSending(batch, "w01_firm.csv", { status: "waiting" });
+    expect(standingOfAll(batch, study)).toMatchObject({ sentBytes: 42, askedBytes: 200 });
   });
 
   it("cannot be changed while it is on its way", () => {

@@ -539,20 +539,24 @@ function wantsOf(
   wants.push(...mapProblemsOf(batch, study, file).map(({ short }) => short));
   const side = sideOf(study, file);
   if (reading === null || side === null) return wants;
+  const unconfirmed: string[] = [];
+  const odd: string[] = [];
   for (const axis of mapOf(batch, study, file)?.axes ?? []) {
     if (!axis.mapped) continue;
     const label = study.axes.find(({ name }) => name === axis.name)?.label ?? axis.name;
     if (!isConfirmed(axis, side)) {
-      wants.push(`confirm the movement of ${label}`);
+      unconfirmed.push(label);
       continue;
     }
     const movement = reading.movements.find((one) => one.axis === axis.name);
     if (!movement || file.accepted[axis.name] === channelsInText(axis, side)) continue;
     const signs = { angle: axis.angle.sign[side], torque: axis.torque.sign[side] };
     if (stiffnessSign(movement, signs) === "negative") {
-      wants.push(`K would be negative about ${label}`);
+      odd.push(label);
     }
   }
+  if (unconfirmed.length > 0) wants.push(`confirm the movement of ${unconfirmed.join(" and ")}`);
+  if (odd.length > 0) wants.push(`K would be negative about ${odd.join(" and ")}`);
   return wants;
 }
 
@@ -569,6 +573,8 @@ export interface BatchStanding {
   reading: number;
   /** Waiting, on their way or being verified. */
   underWay: string[];
+  /** Of these the ones that can still be ended. */
+  unsent: string[];
   broken: string[];
   ready: number;
   /** Of the files that were asked for: bytes that arrived, and all. */
@@ -583,6 +589,7 @@ export function standingOfAll(batch: Batch, study: TakeInStudy): BatchStanding {
     needYou: [],
     reading: 0,
     underWay: [],
+    unsent: [],
     broken: [],
     ready: 0,
     sentBytes: 0,
@@ -598,11 +605,13 @@ export function standingOfAll(batch: Batch, study: TakeInStudy): BatchStanding {
     if (kind === "ready") all.ready += 1;
     if (kind === "waiting" || kind === "sending" || kind === "verifying") {
       all.underWay.push(file.id);
+      if (kind !== "verifying") all.unsent.push(file.id);
     }
     const { sending } = file;
     if (sending.status === "not_asked" || sending.status === "refused") continue;
     all.asked += 1;
     all.askedBytes += file.sizeBytes;
+    if (sending.status === "waiting") continue;
     all.sentBytes += "sentBytes" in sending ? sending.sentBytes : file.sizeBytes;
   }
   return all;

@@ -45,8 +45,13 @@ export function columnOptions({ header, units }: TablePreview) {
     .filter(({ name }, index) => name !== "" && header.indexOf(name) === index)
     .map(({ name, unit }) => ({
       value: name,
-      label: unit === "" || name.includes(unit) ? name : `${name} (${unit})`,
+      label: unit === "" || nameEndsInUnit(name, unit) ? name : `${name} (${unit})`,
     }));
+}
+
+/** "Angle (deg)", "angle_deg": the name says it already. */
+function nameEndsInUnit(name: string, unit: string): boolean {
+  return [`(${unit})`, `[${unit}]`, `_${unit}`, ` ${unit}`].some((end) => name.endsWith(end));
 }
 
 export function unitOptions(units: readonly Unit[]) {

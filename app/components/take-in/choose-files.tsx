@@ -1,4 +1,5 @@
 import { type DragEvent, type ReactNode, useRef, useState } from "react";
+import { Mark } from "#app/components/mark.tsx";
 
 /** The usual endings; a browser lets a person choose others too. */
 const ENDINGS = ".csv,.tsv,.txt,.dat,.asc";
@@ -78,8 +79,9 @@ export function DropArea({
     >
       {children}
       {isOver ? (
-        <div className="pointer-events-none absolute inset-0 z-10 border-2 border-ink bg-paper/85">
-          <p className="sticky top-0 grid h-[min(100%,100dvh)] place-items-center font-semibold">
+        <div className="pointer-events-none absolute inset-0 z-10 border-2 border-ink bg-paper/95">
+          <p className="sticky top-0 flex h-[min(100%,100dvh)] flex-col items-center justify-center gap-4 font-semibold">
+            <Mark size="sketch" />
             Let go to put them on the list
           </p>
         </div>

@@ -17,12 +17,13 @@ import { standingInWords } from "./standing-words.ts";
 import type { TakeIn } from "./use-take-in.ts";
 
 const COLUMNS =
-  "xl:grid-cols-[minmax(0,1fr)_5.75rem_8rem_7rem_8.5rem_1.5rem] xl:gap-x-2 xl:gap-y-0";
+  "xl:grid-cols-[minmax(0,1fr)_5.5rem_7.5rem_6.75rem_8.5rem_1.5rem] xl:gap-x-2 xl:gap-y-0";
 
 /** One line a file: its name, where it belongs, and how it stands. */
 export function FileList({ takeIn, study }: { takeIn: TakeIn; study: TakeInStudy }) {
   const { batch } = takeIn;
-  const open = batch.files.filter(mayChange).map(({ id }) => id);
+  const open = batch.files.filter((file) => isOpenTo(file, standingOf(batch, study, file)));
+  const openIds = open.map(({ id }) => id);
   return (
     <>
       <div
@@ -38,7 +39,7 @@ export function FileList({ takeIn, study }: { takeIn: TakeIn; study: TakeInStudy
       {open.length > 1 ? (
         <ForAll
           count={open.length}
-          onChange={(place) => takeIn.change((now) => setPlace(now, open, place))}
+          onChange={(place) => takeIn.change((now) => setPlace(now, openIds, place))}
           study={study}
         />
       ) : null}
@@ -56,6 +57,11 @@ export function FileList({ takeIn, study }: { takeIn: TakeIn; study: TakeInStudy
       </ul>
     </>
   );
+}
+
+/** Whether there is anything to say of where a file belongs. */
+function isOpenTo(file: BatchFile, standing: Standing): boolean {
+  return mayChange(file) && standing.kind !== "held" && standing.kind !== "same";
 }
 
 /** Says one thing of every file that may still be changed. */
@@ -134,12 +140,12 @@ function FileRow({
   takeIn: TakeIn;
 }) {
   const options = placeOptions(study);
-  const isOpen = mayChange(file) && standing.kind !== "held" && standing.kind !== "same";
+  const isOpen = isOpenTo(file, standing);
   const set = (place: Partial<Place>) => takeIn.change((now) => setPlace(now, [file.id], place));
   return (
     <li
       aria-current={isChosen ? "true" : undefined}
-      className="relative -mx-2 border-b border-rule px-2 py-1.5 aria-[current]:bg-hover"
+      className="relative -mx-2 border-b border-rule px-2 pt-1.5 pb-1 aria-[current]:bg-hover"
     >
       <div className={`grid grid-cols-2 items-center gap-2 ${COLUMNS}`}>
         <button
@@ -156,7 +162,6 @@ function FileRow({
           <>
             {(["participantId", "conditionId", "postureId"] as const).map((field) => (
               <SelectField
-                aria-invalid={file.place[field] === "" ? true : undefined}
                 key={field}
                 label={
                   <>
@@ -238,7 +243,7 @@ function StandingLine({
   const share = standing.kind === "sending" ? standing.share : 0;
   return (
     <>
-      <p className="mt-0.5 flex flex-wrap items-center gap-x-2 text-sm">
+      <p className="flex min-h-6 flex-wrap items-center gap-x-2 text-sm">
         {standing.kind === "ready" ? <StateMark silent state="recorded" /> : null}
         <span className={isWeighty ? "text-ink" : "text-ink-2"}>
           {isWeighty ? <Weighty words={standingInWords(standing)} /> : standingInWords(standing)}

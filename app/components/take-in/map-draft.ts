@@ -240,10 +240,10 @@ export function problemsOfMap(draft: MapDraft, around: MapSurroundings): MapProb
   const problems: MapProblem[] = [];
   const note = (field: string, short: string, sentence: string) =>
     problems.push({ field, short, sentence });
-  const column = (field: string, what: string, name: string) => {
-    if (name === "") note(field, what, `Choose the column of ${what}.`);
+  const column = (field: string, what: string, name: string, phrase = `the ${what}`) => {
+    if (name === "") note(field, what, `Choose the column of ${phrase}.`);
     else if (!around.header.includes(name)) {
-      note(field, what, `This file has no column “${name}”: choose the column of ${what}.`);
+      note(field, what, `This file has no column “${name}”: choose the column of ${phrase}.`);
     } else if (!standsOnce(around.header, name)) {
       note(
         field,
@@ -254,7 +254,7 @@ export function problemsOfMap(draft: MapDraft, around: MapSurroundings): MapProb
   };
 
   if (draft.timeFrom === "column") {
-    column("time", "time", draft.timeColumn);
+    column("time", "time", draft.timeColumn, "time");
     if (draft.timeUnit === "") note("timeUnit", "unit of time", "Choose the unit of time.");
   } else if (!((readDecimal(draft.rateHz) ?? 0) > 0)) {
     note("rateHz", "rate", "Write the rate in samples per second, for example 2000.");
@@ -275,7 +275,7 @@ export function problemsOfMap(draft: MapDraft, around: MapSurroundings): MapProb
       const what = `${word} of ${label}`;
       column(`${axis.name}.${key}.column`, what, channel.column);
       if (channel.unit === "") {
-        note(`${axis.name}.${key}.unit`, `unit of ${what}`, `Choose the unit of ${what}.`);
+        note(`${axis.name}.${key}.unit`, `unit of ${what}`, `Choose the unit of the ${what}.`);
       }
       if (!readDecimal(channel.gain)) {
         note(
@@ -307,7 +307,7 @@ export function problemsOfMap(draft: MapDraft, around: MapSurroundings): MapProb
     if (channel.muscle.trim() === "") {
       note(`emg.${index}.muscle`, `name of ${what}`, "Name the muscle, or take the line away.");
     }
-    column(`emg.${index}.column`, what, channel.column);
+    column(`emg.${index}.column`, what, channel.column, what);
     if (channel.unit === "") {
       note(`emg.${index}.unit`, `unit of ${what}`, `Choose the unit of ${what}.`);
     }

@@ -62,24 +62,24 @@ export function MovementNote({
       <div className="mt-1.5 flex flex-wrap gap-2">
         {done ? (
           <span className="inline-flex min-h-[30px] items-center text-sm text-ink-2">
-            Confirmed for the {side} side.
+            Confirmed ({side} side)
           </span>
         ) : (
           <Button onClick={onConfirm} type="button">
-            Confirm for the {side} side
-            <span className="sr-only">: {axis.label}</span>
+            Confirm ({side} side)
+            <span className="sr-only"> about {axis.label}</span>
           </Button>
         )}
         {words.otherWay ? (
           <Button onClick={onTurn} type="button">
-            It went towards {words.otherWay}
-            <span className="sr-only">: {axis.label}</span>
+            No, towards {words.otherWay}
+            <span className="sr-only"> about {axis.label}</span>
           </Button>
         ) : null}
         {words.stiffness === "negative" ? (
           <Button onClick={onTurnTorque} type="button">
             Turn the torque round
-            <span className="sr-only">: {axis.label}</span>
+            <span className="sr-only"> about {axis.label}</span>
           </Button>
         ) : null}
       </div>

@@ -30,10 +30,19 @@ describe("the reason beside the button", () => {
   });
 
   it("names the one file that needs a person, or counts them and names the first", () => {
-    expect(reasonInWords([needs("a.csv")], 0)).toBe("a.csv needs you: condition.");
-    expect(reasonInWords([needs("a.csv"), needs("b.csv")], 1)).toBe(
+    const none = { good: 0, reading: 0, underWay: 0 };
+    expect(reasonInWords({ ...none, waiting: [needs("a.csv")] })).toBe(
+      "a.csv needs you: condition.",
+    );
+    expect(reasonInWords({ ...none, waiting: [needs("a.csv"), needs("b.csv")], reading: 1 })).toBe(
       "2 files need you, first a.csv: condition. 1 file is being read.",
     );
-    expect(reasonInWords([], 0)).toBe("");
+  });
+
+  it("says that nothing is left, and says nothing where all can go", () => {
+    const none = { waiting: [], good: 0, reading: 0, underWay: 0 };
+    expect(reasonInWords(none)).toBe("Nothing on the list is left to take in.");
+    expect(reasonInWords({ ...none, good: 3 })).toBe("");
+    expect(reasonInWords({ ...none, underWay: 1 })).toBe("");
   });
 });

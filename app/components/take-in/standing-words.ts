@@ -42,10 +42,19 @@ export function percent(share: number): string {
 }
 
 /** What stands beside the button: why it takes only these files, or none. */
-export function reasonInWords(
-  waiting: readonly { name: string; standing: Standing }[],
-  reading: number,
-): string {
+export function reasonInWords({
+  waiting,
+  good,
+  reading,
+  underWay,
+}: {
+  /** Files that need a person, in the list's order. */
+  waiting: readonly { name: string; standing: Standing }[];
+  /** How many can be taken in, are being read, are on their way. */
+  good: number;
+  reading: number;
+  underWay: number;
+}): string {
   const parts: string[] = [];
   const [first, ...others] = waiting;
   if (first) {
@@ -55,6 +64,9 @@ export function reasonInWords(
         ? `${first.name} needs you: ${wants[0] ?? ""}.`
         : `${waiting.length} files need you, first ${first.name}: ${wants[0] ?? ""}.`,
     );
+  }
+  if (!first && reading === 0 && underWay === 0 && good === 0) {
+    parts.push("Nothing on the list is left to take in.");
   }
   if (reading > 0) parts.push(`${reading} ${reading === 1 ? "file is" : "files are"} being read.`);
   return parts.join(" ");

@@ -57,7 +57,7 @@ export function TakeInPage({
   }
   const all = standingOfAll(batch, study);
   return (
-    <div className="grid min-h-dvh lg:grid-cols-[minmax(0,1fr)_22rem] xl:grid-cols-[minmax(0,1fr)_24rem]">
+    <div className="grid min-h-dvh lg:grid-cols-[minmax(0,1fr)_22rem] xl:grid-cols-[minmax(0,1fr)_23.5rem]">
       <DropArea className="flex min-w-0 flex-col px-5 pt-4" onFiles={takeIn.add}>
         {head}
         <div className="mb-3 flex flex-wrap items-start justify-between gap-x-6 gap-y-2">
@@ -102,7 +102,7 @@ export function TakeInPage({
 function PatternField({ study, takeIn }: { study: TakeInStudy; takeIn: TakeIn }) {
   const { pattern } = takeIn.batch;
   return (
-    <div className="w-full sm:w-80">
+    <div className="w-full sm:w-88">
       <div className="flex items-baseline gap-2">
         <span aria-hidden="true" className="shrink-0 text-ink-2">
           file names
@@ -145,7 +145,12 @@ function TakeInBar({
   const waiting = batch.files
     .filter(({ id }) => all.needYou.includes(id))
     .map((file) => ({ name: file.name, standing: standingOf(batch, study, file) }));
-  const reason = reasonInWords(waiting, all.reading);
+  const reason = reasonInWords({
+    waiting,
+    good: all.good.length,
+    reading: all.reading,
+    underWay: all.underWay.length + all.broken.length,
+  });
   const isUnderWay = all.underWay.length > 0;
   const share = all.askedBytes === 0 ? 0 : all.sentBytes / all.askedBytes;
   const done = batch.files
@@ -196,8 +201,8 @@ function TakeInBar({
               Continue {countOf(all.broken.length, "upload")}
             </Button>
           ) : null}
-          {isUnderWay ? (
-            <Button onClick={() => takeIn.stop(all.underWay)} type="button">
+          {all.unsent.length > 0 ? (
+            <Button onClick={() => takeIn.stop(all.unsent)} type="button">
               Cancel all uploads
             </Button>
           ) : null}

@@ -323,7 +323,12 @@ function useSending(held: Ref<Held>, blobs: Ref<Map<string, File>>, change: Chan
 
   const stop = useCallback(
     (ids: readonly string[]) => {
-      for (const id of ids) {
+      // What is being verified has arrived: the server goes on by itself.
+      const unsent = ids.filter((id) => {
+        const status = findFile(held.current.batch, id)?.sending.status ?? "";
+        return ["waiting", "sending", "broken"].includes(status);
+      });
+      for (const id of unsent) {
         stops.current.get(id)?.abort();
         stops.current.delete(id);
         const upload = uploads.current.get(id);
@@ -332,12 +337,7 @@ function useSending(held: Ref<Held>, blobs: Ref<Map<string, File>>, change: Chan
         if (upload) held.current.ports.send.cancel(upload.id).catch(() => {});
       }
       change((now) =>
-        ids.reduce((list, id) => {
-          const status = findFile(list, id)?.sending.status ?? "";
-          return ["waiting", "sending", "broken"].includes(status)
-            ? setSending(list, id, { status: "not_asked" })
-            : list;
-        }, now),
+        unsent.reduce((list, id) => setSending(list, id, { status: "not_asked" }), now),
       );
       pump();
     },

@@ -120,18 +120,18 @@ function TakeInOfStudy({ shown }: { shown: Route.ComponentProps["loaderData"] })
   );
   const onDone = useCallback(() => void revalidate(), [revalidate]);
   const takeIn = useTakeIn(study, ports, onDone);
-  const underWay = standingOfAll(takeIn.batch, study).underWay;
-  const uploads = countOf(underWay.length, "upload");
+  const { unsent } = standingOfAll(takeIn.batch, study);
+  const uploads = countOf(unsent.length, "upload");
 
   useEffect(() => {
-    if (underWay.length === 0) return;
+    if (unsent.length === 0) return;
     const warn = (event: BeforeUnloadEvent) => event.preventDefault();
     window.addEventListener("beforeunload", warn);
     return () => window.removeEventListener("beforeunload", warn);
-  }, [underWay.length]);
+  }, [unsent.length]);
   const blocker = useBlocker(
     ({ currentLocation, nextLocation }) =>
-      underWay.length > 0 && currentLocation.pathname !== nextLocation.pathname,
+      unsent.length > 0 && currentLocation.pathname !== nextLocation.pathname,
   );
 
   return (
@@ -156,7 +156,7 @@ function TakeInOfStudy({ shown }: { shown: Route.ComponentProps["loaderData"] })
         actions={
           <Button
             onClick={() => {
-              takeIn.stop(underWay);
+              takeIn.stop(unsent);
               blocker.proceed?.();
             }}
             type="button"
@@ -169,8 +169,8 @@ function TakeInOfStudy({ shown }: { shown: Route.ComponentProps["loaderData"] })
         title="Uploads are under way"
       >
         <p>
-          {uploads} {underWay.length === 1 ? "is" : "are"} not at the end. Stay until they are
-          ready, or leave: what has not arrived whole is given up, and nothing of it is kept.
+          {uploads} {unsent.length === 1 ? "is" : "are"} not at the end. Stay until they are ready,
+          or leave: what has not arrived whole is given up, and nothing of it is kept.
         </p>
       </Dialog>
     </>
