@@ -237,13 +237,12 @@ export async function addPart(
 export async function changeCondition(
   desk: Desk,
   actor: Actor,
-  input: { conditionId: string; version: number; values: NewCondition },
+  input: { studyId: string; conditionId: string; version: number; values: NewCondition },
 ): Promise<ChangedStudy> {
   requireAbility(actor, "set_up_study");
+  const { studyId } = input;
   return desk.store.write(async (tx) => {
-    const studyId = await findStudyOfPart(tx, actor.labId, "condition", input.conditionId);
-    if (studyId === null) throw notFound();
-    const study = await getStudy(tx, actor, studyId);
+    const study = await getStudyWith(tx, actor, studyId, "condition", input.conditionId);
     if (study.version !== input.version) return STALE_STUDY;
     const { values } = input;
     const taken = await nameTaken(tx, study.id, "condition", values.name, input.conditionId);
@@ -272,14 +271,12 @@ const PART_WORDS = {
 export async function removePart(
   desk: Desk,
   actor: Actor,
-  input: { part: StudyPart; id: string; version: number },
+  input: { studyId: string; part: StudyPart; id: string; version: number },
 ): Promise<RemovedPart> {
   requireAbility(actor, "set_up_study");
-  const { part, id } = input;
+  const { studyId, part, id } = input;
   return desk.store.write(async (tx) => {
-    const studyId = await findStudyOfPart(tx, actor.labId, part, id);
-    if (studyId === null) throw notFound();
-    const study = await getStudy(tx, actor, studyId);
+    const study = await getStudyWith(tx, actor, studyId, part, id);
     if (study.version !== input.version) return STALE_STUDY;
     const count = await countRecordingsWith(tx, part, id);
     if (count > 0) {
@@ -351,13 +348,13 @@ export type ChangedParticipant = { status: "changed"; version: number } | StaleS
 export async function changeParticipant(
   desk: Desk,
   actor: Actor,
-  input: { participantId: string; version: number; values: NewParticipant },
+  input: { studyId: string; participantId: string; version: number; values: NewParticipant },
 ): Promise<ChangedParticipant> {
   requireAbility(actor, "set_up_study");
   const { values } = input;
   return desk.store.write(async (tx) => {
     const participant = await findParticipant(tx, actor.labId, input.participantId);
-    if (!participant) throw notFound();
+    if (participant?.studyId !== input.studyId) throw notFound();
     if (participant.version !== input.version) {
       return {
         status: "stale",
@@ -469,6 +466,18 @@ async function getStudy(tx: Transaction, actor: Actor, studyId: string): Promise
   const study = await findStudy(tx, actor.labId, studyId);
   if (!study) throw notFound();
   return study;
+}
+
+/** The study that this part stands in: a part of another one is not there. */
+async function getStudyWith(
+  tx: Transaction,
+  actor: Actor,
+  studyId: string,
+  part: StudyPart,
+  id: string,
+): Promise<StudyRow> {
+  if ((await findStudyOfPart(tx, actor.labId, part, id)) !== studyId) throw notFound();
+  return getStudy(tx, actor, studyId);
 }
 
 function note(

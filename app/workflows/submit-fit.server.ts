@@ -1,6 +1,7 @@
 import { recordEvent } from "#app/db/events.server.ts";
 import { type FitRow, getFitRow, updateFitState } from "#app/db/fits.server.ts";
 import type { FitState, Verification } from "#app/domain/fit.ts";
+import { notFound } from "#app/domain/refusal.ts";
 import type { Actor } from "#app/domain/role.ts";
 import type { Desk } from "./desk.server.ts";
 import { requireAbility } from "./permission.server.ts";
@@ -18,16 +19,22 @@ export type SubmittedFit =
   | { status: "not_verified"; verification: Verification; sentence: string }
   | { status: "refused"; sentence: string };
 
-/** Hands a verified fit over for review. */
+/**
+ * Hands a verified fit over for review.
+ *
+ * @param input.recordingId  where the fit was sent from its recording's page: one of another
+ *   recording is not there
+ */
 export async function submitFit(
   desk: Desk,
   actor: Actor,
-  input: { fitId: string; version: number },
+  input: { fitId: string; version: number; recordingId?: string },
 ): Promise<SubmittedFit> {
   requireAbility(actor, "submit");
   const at = desk.clock.now();
   return desk.store.write(async (tx) => {
     const fit = await getFitRow(tx, actor.labId, input.fitId);
+    if (input.recordingId !== undefined && fit.recordingId !== input.recordingId) throw notFound();
     if (fit.version !== input.version || fit.supersededAt !== null) return staleFit(fit);
     if (fit.state !== "draft" && fit.state !== "returned") {
       return {

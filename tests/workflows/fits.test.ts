@@ -12,6 +12,7 @@ import { recordings } from "#app/db/schema.ts";
 import type { SavedWindow } from "#app/domain/fit.ts";
 import { defaultChoices, parseProtocol } from "#app/domain/protocol.ts";
 import type { Actor } from "#app/domain/role.ts";
+import * as recordingPage from "#app/routes/recordings/recording.tsx";
 import { background } from "#app/workflows/background.server.ts";
 import {
   noteFitDownloaded,
@@ -34,6 +35,7 @@ import {
   sha256Of,
   type TestStudy,
 } from "../support/study.ts";
+import { openTestGate, signInAs, visit } from "../support/visit.ts";
 
 // The engine's thread starts in the first test that needs it: seconds on a busy machine.
 vi.setConfig({ testTimeout: 60_000, hookTimeout: 60_000 });
@@ -337,6 +339,20 @@ describe("submitting a fit", () => {
       status: "stale",
       current: { isSuperseded: true },
     });
+  });
+
+  it("from a recording's page reaches that recording's fits alone", async () => {
+    const fitId = await saved();
+    const file = { bytes: recordingBytes({ K: 3, B: 0.05, I: 0.004 }), fileName: "other.csv" };
+    const otherId = await readyRecording(lab, study, file);
+    const gate = await openTestGate(lab);
+    const cookie = await signInAs(gate, lab.people.biomechanist.id, lab.lab.id);
+    const submitFrom = (id: string) => {
+      const json = { intent: "submit", fitId, version: 1 };
+      return recordingPage.action(visit(lab, gate, `/recordings/${id}`, { id }, { cookie, json }));
+    };
+    await expect(submitFrom(otherId)).rejects.toMatchObject({ status: 404 });
+    expect(await submitFrom(recordingId)).toEqual({ status: "submitted", version: 2 });
   });
 
   it("is for the biomechanist of the lab", async () => {

@@ -130,7 +130,7 @@ describe("changing a study", () => {
         .map((condition) => condition.name);
     expect(await baselines()).toEqual(["Brace"]);
     const back = { name: "Off", level: 0, levelUnit: "kPa", isBaseline: true, isActive: false };
-    const change = { conditionId: conditionIds[0] ?? "", values: back };
+    const change = { studyId, conditionId: conditionIds[0] ?? "", values: back };
     const stale = await changeCondition(lab.desk, lab.actor("biomechanist"), {
       ...change,
       version: 1,
@@ -154,7 +154,7 @@ describe("changing a study", () => {
   it("removes a part that nothing rests on, but never the last one", async () => {
     const { studyId, conditionIds, postureId } = await setUpStudy(lab);
     const remove = (part: "condition" | "posture", id: string, version: number) =>
-      removePart(lab.desk, lab.actor("biomechanist"), { part, id, version });
+      removePart(lab.desk, lab.actor("biomechanist"), { studyId, part, id, version });
     expect(await remove("posture", postureId, 1)).toMatchObject({ status: "refused" });
     expect(await remove("condition", conditionIds[1] ?? "", 1)).toEqual({
       status: "removed",
@@ -175,13 +175,20 @@ describe("changing a study", () => {
       changeStudy(lab.desk, outside, { studyId, version: 1, name: "A", rig }),
       addPart(lab.desk, outside, { studyId, version: 1, part: "posture", values: { name: "A" } }),
       changeCondition(lab.desk, outside, {
+        studyId,
         conditionId: conditionIds[0] ?? "",
         version: 1,
         values,
       }),
-      removePart(lab.desk, outside, { part: "condition", id: conditionIds[0] ?? "", version: 1 }),
+      removePart(lab.desk, outside, {
+        studyId,
+        part: "condition",
+        id: conditionIds[0] ?? "",
+        version: 1,
+      }),
       addParticipant(lab.desk, outside, { studyId, values: person }),
       changeParticipant(lab.desk, outside, {
+        studyId,
         participantId: participantIds[0] ?? "",
         version: 1,
         values: person,
@@ -195,6 +202,26 @@ describe("changing a study", () => {
     ];
     for (const each of tries) await expect(each).rejects.toMatchObject(missing);
   });
+
+  it("does not reach the parts of another study of the lab", async () => {
+    const { conditionIds, participantIds } = await setUpStudy(lab);
+    const { studyId } = await setUpStudy(lab, { ...setUp, name: "Second study" });
+    const seen = { studyId, version: 1 };
+    const values = { name: "A", level: null, levelUnit: null, isBaseline: true, isActive: false };
+    const person = { code: "W09", testedSide: "left", bodyMassKg: null, heightM: null } as const;
+    const [conditionId = "", id = ""] = conditionIds;
+    const participantId = participantIds[0] ?? "";
+    const tries = [
+      changeCondition(lab.desk, lab.actor("manager"), { ...seen, conditionId, values }),
+      removePart(lab.desk, lab.actor("manager"), { ...seen, part: "condition", id }),
+      changeParticipant(lab.desk, lab.actor("manager"), {
+        ...seen,
+        participantId,
+        values: person,
+      }),
+    ];
+    for (const each of tries) await expect(each).rejects.toMatchObject({ status: 404 });
+  });
 });
 
 describe("participants", () => {
@@ -206,6 +233,7 @@ describe("participants", () => {
     const { participantId } = added;
     const change = (version: number, bodyMassKg: number) =>
       changeParticipant(lab.desk, lab.actor("manager"), {
+        studyId,
         participantId,
         version,
         values: { ...values, bodyMassKg },

@@ -126,7 +126,7 @@ export async function action({ request, context, params }: Route.ActionArgs) {
   }
   if (sent.data.intent === "submit") {
     const { fitId, version } = sent.data;
-    return await submitFit(desk, actor, { fitId, version });
+    return await submitFit(desk, actor, { recordingId: params.id, fitId, version });
   }
   const { intent: _, ...fit } = sent.data;
   return await storeFit(desk, actor, { recordingId: params.id, ...fit });

@@ -152,16 +152,16 @@ export async function action({ request, context, params }: Route.ActionArgs) {
         );
       case "change_condition":
         return checked(conditionSchema.safeParse(conditionOfFields(typed)), (values) =>
-          changeCondition(desk, actor, { conditionId: id, version, values }),
+          changeCondition(desk, actor, { studyId, conditionId: id, version, values }),
         );
       case "change_participant":
         return checked(participantSchema.safeParse(participantOfFields(typed)), (values) =>
-          changeParticipant(desk, actor, { participantId: id, version, values }),
+          changeParticipant(desk, actor, { studyId, participantId: id, version, values }),
         );
       default: {
         const part = PARTS.find((name) => name === typed.part);
         if (!part) throw notFound();
-        return removePart(desk, actor, { part, id, version });
+        return removePart(desk, actor, { studyId, part, id, version });
       }
     }
   }
