@@ -1,4 +1,3 @@
-import { spawn } from "node:child_process";
 import { mkdtempSync, rmSync } from "node:fs";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
@@ -9,8 +8,8 @@ import { verifyChain } from "#app/db/events.server.ts";
 import { findPersonByEmail, listMemberships } from "#app/db/people.server.ts";
 import { events, labs, people } from "#app/db/schema.ts";
 import { readEnv } from "#app/env.server.ts";
+import { runScript } from "../support/run-script.ts";
 
-const root = join(import.meta.dirname, "..", "..");
 const PASSWORD = "three words and a comma,";
 const ADA = ["--lab", "Movement room", "--name", "Ada Berg", "--email", "Ada@Lab.example"];
 
@@ -21,25 +20,11 @@ beforeEach(() => {
 });
 afterEach(() => rmSync(folder, { recursive: true, force: true }));
 
-/** Runs the command as a person in a shell does, with `input` at its standard input. */
-async function run(
-  args: string[],
-  { input = "", env = {} }: { input?: string; env?: Record<string, string> } = {},
-): Promise<{ code: number | null; said: string }> {
-  const child = spawn(process.execPath, ["--import", "tsx", "scripts/first-lab.ts", ...args], {
-    cwd: root,
-    env: { PATH: process.env.PATH ?? "", OGEE_DATA: folder, ...env },
+const run = (args: string[], options: { input?: string; env?: Record<string, string> } = {}) =>
+  runScript("scripts/first-lab.ts", args, {
+    ...options,
+    env: { OGEE_DATA: folder, ...options.env },
   });
-  let said = "";
-  for (const stream of [child.stdout, child.stderr]) {
-    stream.on("data", (chunk: Buffer) => {
-      said += chunk.toString();
-    });
-  }
-  child.stdin.end(input);
-  const code = await new Promise<number | null>((resolve) => child.once("close", resolve));
-  return { code, said };
-}
 
 describe("npm run first-lab", () => {
   it("makes the lab and its manager, whose password is only a hash and in no event", async () => {
