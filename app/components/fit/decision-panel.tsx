@@ -1,6 +1,11 @@
-import { type ReactNode, useState } from "react";
+import { useState } from "react";
 import { Button } from "#app/components/button.tsx";
 import { TextAreaField } from "#app/components/field.tsx";
+
+/** What the page's keys act on. */
+export const NOTE_ID = "review-note";
+export const APPROVE_ID = "approve";
+export const RETURN_ID = "return";
 
 /** Approve or return: for a reviewer who had no hand in it and has seen the residuals. */
 export function DecisionPanel({
@@ -9,7 +14,6 @@ export function DecisionPanel({
   isBusy,
   said,
   onDecide,
-  next,
 }: {
   /** Why this person may not decide at all, or null. */
   whyNot: string | null;
@@ -18,8 +22,6 @@ export function DecisionPanel({
   /** What the server answered, where it was no. */
   said: string | null;
   onDecide: (decision: "approved" | "returned", note: string) => void;
-  /** What can be done where there is nothing to decide. */
-  next?: ReactNode;
 }) {
   const [note, setNote] = useState("");
   const [error, setError] = useState<string | null>(null);
@@ -43,6 +45,7 @@ export function DecisionPanel({
       <TextAreaField
         disabled={whyNot !== null}
         error={error ?? said}
+        id={NOTE_ID}
         hint="Needed when it is returned."
         label="Note to the biomechanist"
         maxLength={2000}
@@ -56,6 +59,7 @@ export function DecisionPanel({
         <Button
           busy={isBusy}
           busyLabel="Sending"
+          id={APPROVE_ID}
           disabled={approveWhyNot !== null}
           look="do"
           onClick={() => onDecide("approved", note)}
@@ -66,6 +70,7 @@ export function DecisionPanel({
         </Button>
         <Button
           disabled={whyNot !== null || isBusy}
+          id={RETURN_ID}
           onClick={() => {
             if (note.trim() === "") setError("Say what should be changed, then return it.");
             else onDecide("returned", note);
@@ -75,7 +80,6 @@ export function DecisionPanel({
         >
           Return to biomechanist
         </Button>
-        {next}
       </div>
     </section>
   );

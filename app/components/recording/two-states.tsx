@@ -2,11 +2,11 @@ import type { ReactNode } from "react";
 import { FigureNumber } from "#app/components/figure-number.tsx";
 import { TermLetter } from "#app/components/term-row.tsx";
 import { countOf, scaleOf } from "#app/domain/quantity.ts";
-import { type ResultPooled, TERMS, type WindowChoice } from "#app/engine/types.ts";
+import { type ResultPooled, TERMS, type Term, type WindowChoice } from "#app/engine/types.ts";
 
 export interface OneState {
   title: string;
-  words: ReactNode;
+  words: string;
   windows: readonly WindowChoice[];
   pooled: readonly ResultPooled[];
 }
@@ -21,70 +21,101 @@ export function TwoStates({
   mine: OneState;
   actions: ReactNode;
 }) {
+  const groups = [...theirs.pooled, ...mine.pooled]
+    .map(({ axis, direction }) => ({ axis, direction }))
+    .filter((group, i, all) => all.findIndex((other) => isSameGroup(other, group)) === i);
   return (
     <section
       aria-label="Two states of this fit"
       className="my-3 border border-edge bg-sheet p-3"
       role="alert"
     >
-      <div className="grid gap-4 md:grid-cols-2">
-        <State state={theirs} />
-        <State state={mine} />
+      <div className="wide">
+        <table className="rows">
+          <thead>
+            <tr>
+              <th scope="col">
+                <span className="sr-only">term</span>
+              </th>
+              <StateHead state={theirs} />
+              <StateHead state={mine} />
+            </tr>
+          </thead>
+          <tbody>
+            {groups.map((group) =>
+              TERMS.map((term) => (
+                <TermOfBoth
+                  group={group}
+                  key={`${group.axis} ${group.direction} ${term}`}
+                  mine={mine.pooled.find((each) => isSameGroup(each, group))}
+                  term={term}
+                  theirs={theirs.pooled.find((each) => isSameGroup(each, group))}
+                />
+              )),
+            )}
+          </tbody>
+        </table>
       </div>
       <div className="mt-3 flex flex-wrap gap-2">{actions}</div>
     </section>
   );
 }
 
-function State({ state }: { state: OneState }) {
+function StateHead({ state }: { state: OneState }) {
   const included = state.windows.filter((window) => window.included).length;
-  const scales = new Map(
-    TERMS.map((term) => [
-      term,
-      scaleOf(
-        term,
-        state.pooled.map((pooled) => pooled[term].window_mean),
-      ),
-    ]),
-  );
   return (
-    <div className="wide">
-      <h2>{state.title}</h2>
-      <p className="text-sm text-ink-2">{state.words}</p>
-      <p className="my-1">
+    <th className="r" scope="col">
+      <span className="block text-base font-semibold text-ink">{state.title}</span>
+      <span className="block">{state.words}</span>
+      <span className="block">
         {countOf(included, "window")} included, {state.windows.length - included} set aside
-      </p>
-      <table className="rows">
-        <thead>
-          <tr>
-            <th scope="col">towards</th>
-            {TERMS.map((term) => (
-              <th className="r" key={term} scope="col">
-                <TermLetter term={term} /> <span className="unit">{scales.get(term)?.unit}</span>
-              </th>
-            ))}
-          </tr>
-        </thead>
-        <tbody>
-          {state.pooled.map((pooled) => (
-            <tr key={`${pooled.axis} ${pooled.direction}`}>
-              <th scope="row">
-                {pooled.axis} {pooled.direction}
-              </th>
-              {TERMS.map((term) => (
-                <td className="r" key={term}>
-                  <FigureNumber
-                    factor={scales.get(term)?.factor ?? 1}
-                    interval={pooled[term].t}
-                    showInterval
-                    value={pooled[term].window_mean}
-                  />
-                </td>
-              ))}
-            </tr>
-          ))}
-        </tbody>
-      </table>
-    </div>
+      </span>
+    </th>
   );
+}
+
+/** One term in both states; what differs stands out by its weight. */
+function TermOfBoth({
+  term,
+  group,
+  theirs,
+  mine,
+}: {
+  term: Term;
+  group: { axis: string; direction: string };
+  theirs: ResultPooled | undefined;
+  mine: ResultPooled | undefined;
+}) {
+  const [one, other] = [theirs?.[term] ?? null, mine?.[term] ?? null];
+  const { factor, unit } = scaleOf(term, [one?.window_mean ?? null, other?.window_mean ?? null]);
+  const differs = one?.window_mean !== other?.window_mean;
+  return (
+    <tr>
+      <th scope="row">
+        <TermLetter term={term} /> <span className="unit">{unit}</span>
+        <span className="text-sm text-ink-2">
+          {" "}
+          {group.axis}, {group.direction}
+        </span>
+      </th>
+      {[one, other].map((value, i) => (
+        <td className="r" key={i === 0 ? "theirs" : "mine"}>
+          <FigureNumber
+            className={differs ? "font-semibold" : ""}
+            factor={factor}
+            interval={value?.t ?? null}
+            showInterval
+            value={value?.window_mean ?? null}
+          />
+        </td>
+      ))}
+    </tr>
+  );
+}
+
+function isSameGroup(
+  one: { axis: string; direction: string },
+  other: { axis: string; direction: string },
+): boolean {
+  return one.axis === other.axis && one.direction === other.direction;
 }

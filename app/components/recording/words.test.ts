@@ -9,7 +9,7 @@ describe("words beside numbers", () => {
 
   it("never rounds a VAF up to 100", () => {
     expect([99.96, 99.9, 87.24, null].map(formatVaf)).toEqual(["99.96", "99.9", "87.2", "–"]);
-    expect([99.9961, 100].map(formatVaf)).toEqual(["99.996", "100.0"]);
+    expect([99.9961, 100, -198.52].map(formatVaf)).toEqual(["99.996", "100.0", "−198.5"]);
   });
 
   it("says for which direction a flag holds, where it does not hold for all", () => {

@@ -33,11 +33,10 @@ export function spanInWords([start, end]: readonly [number, number]): string {
 
 /** VAF in percent: one decimal, as many more as keep a fit short of 100 from being written so. */
 export function formatVaf(pct: number | null): string {
-  for (let decimals = 1; decimals < 4; decimals++) {
-    const text = formatNumber(pct, decimals);
-    if (pct === null || pct >= 100 || Number(text) < 100) return text;
-  }
-  return formatNumber(pct, 4);
+  if (pct === null || pct >= 100) return formatNumber(pct, 1);
+  let decimals = 1;
+  while (decimals < 4 && Number(pct.toFixed(decimals)) >= 100) decimals++;
+  return formatNumber(pct, decimals);
 }
 
 /**

@@ -27,7 +27,7 @@ import type {
 } from "#app/engine/types.ts";
 import { AddWindowDialog } from "./add-window-dialog.tsx";
 import { FlagSummary } from "./flag-summary.tsx";
-import { KeysDialog } from "./keys-dialog.tsx";
+import { type KeyLine, KeysDialog } from "./keys-dialog.tsx";
 import { ResidualList } from "./residual-list.tsx";
 import { SetAsideDialog } from "./set-aside-dialog.tsx";
 import { TraceArea, type TraceAreaHandle } from "./trace-area.tsx";
@@ -39,6 +39,29 @@ import { useKeys, useSingleKeys } from "./use-keys.ts";
 import { panned, rangeOf, showing, type View, windowView, zoomed } from "./view.ts";
 import { WindowDrawer } from "./window-drawer.tsx";
 import { axisFlags } from "./words.ts";
+
+const EDITING_KEYS: readonly KeyLine[] = [
+  { keys: ["←", "→"], what: "previous, next window" },
+  { keys: ["[", "]"], what: "go to the window’s start, end" },
+  { keys: ["←", "→"], what: "there: trim by one sample (Shift, Page up, Page down: ten)" },
+  { keys: ["X"], what: "set the window aside, or take it back" },
+  { keys: ["O"], what: "start the window at its onset" },
+  { keys: ["T"], what: "use this trim for all windows of the axis" },
+  { keys: ["A"], what: "add a window by hand, at the cursor" },
+  { keys: [",", "."], what: "move the cursor by one sample (Shift: ten)" },
+  { keys: ["+", "−"], what: "zoom in, out" },
+  { keys: ["0"], what: "back to the chosen window" },
+  { keys: ["R"], what: "the whole recording" },
+  { keys: ["1", "2"], what: "first, second axis" },
+  { keys: ["V"], what: "show the traces as a table" },
+  { keys: ["Z"], what: "undo (Shift: redo)" },
+  { keys: ["S"], what: "save" },
+  { keys: ["?"], what: "this list" },
+];
+const ONLY_EDITING = new Set(["[", "X", "O", "T", "A", "Z", "S"]);
+const READING_KEYS = EDITING_KEYS.filter(
+  ({ keys, what }) => !ONLY_EDITING.has(keys[0] ?? "") && !what.startsWith("there"),
+);
 
 const NEAR_STEP = 1.5;
 /** Wider than this the time axis is that of the recording. */
@@ -561,7 +584,7 @@ export function Workbench({
         aria-label="The chosen window"
         className="flex flex-col border-t border-rule bg-sheet p-4 lg:border-t-0 lg:border-l"
       >
-        <div className="flex min-h-0 flex-1 flex-col lg:sticky lg:top-4 lg:max-h-[calc(100dvh-2rem)] lg:overflow-y-auto">
+        <div className="flex flex-col lg:sticky lg:top-4 lg:h-[calc(100dvh-2rem)]">
           {chosen === null ? (
             <p className="text-ink-2">Numbers of a window stand here once there is one.</p>
           ) : (
@@ -626,8 +649,8 @@ export function Workbench({
         windowMs={protocol.window_ms}
       />
       <KeysDialog
-        canEdit={canEdit}
         enabled={singleKeys}
+        lines={canEdit ? EDITING_KEYS : READING_KEYS}
         onClose={() => setDialog(null)}
         onEnable={setSingleKeys}
         open={dialog === "keys"}

@@ -6,7 +6,12 @@ import { requireActor } from "#app/auth/require.server.ts";
 import { TorquePlot } from "#app/charts/torque-plot.tsx";
 import { Button, ButtonLink } from "#app/components/button.tsx";
 import { ErrorScreen } from "#app/components/error-screen.tsx";
-import { DecisionPanel } from "#app/components/fit/decision-panel.tsx";
+import {
+  APPROVE_ID,
+  DecisionPanel,
+  NOTE_ID,
+  RETURN_ID,
+} from "#app/components/fit/decision-panel.tsx";
 import { FitHistory, VERIFICATION_WORDS } from "#app/components/fit/fit-history.tsx";
 import { PlotTable } from "#app/components/fit/plot-table.tsx";
 import { PooledBlock } from "#app/components/fit/pooled-block.tsx";
@@ -16,9 +21,11 @@ import { type FitWindowRow, WindowTable } from "#app/components/fit/window-table
 import { Notice } from "#app/components/notice.tsx";
 import { AxisSwitch } from "#app/components/recording/axis-switch.tsx";
 import { FlagSummary } from "#app/components/recording/flag-summary.tsx";
+import { type KeyLine, KeysDialog } from "#app/components/recording/keys-dialog.tsx";
 import { CannotOpen } from "#app/components/recording/opening.tsx";
 import { RecordingHead } from "#app/components/recording/recording-head.tsx";
 import { ResidualList } from "#app/components/recording/residual-list.tsx";
+import { useKeys, useSingleKeys } from "#app/components/recording/use-keys.ts";
 import { axisFlags } from "#app/components/recording/words.ts";
 import { StateMark } from "#app/components/state-mark.tsx";
 import { getFit } from "#app/db/fits.server.ts";
@@ -234,6 +241,28 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
   const chosen = rows.some((row) => row.number === chosenNumber && row.window.included)
     ? chosenNumber
     : firstIncluded;
+  const included = rows.filter(({ window }) => window.included).map(({ number }) => number);
+  const step = (by: number) => {
+    const next = included[included.indexOf(chosen ?? 0) + by];
+    if (next !== undefined) setChosenNumber(next);
+  };
+  const mayDecide = fit.state === "submitted" && fit.supersededAt === null && shown.may.review;
+  const [keysShown, setKeysShown] = useState(false);
+  const [singleKeys, setSingleKeys] = useSingleKeys();
+  useKeys(
+    {
+      arrowleft: () => step(-1),
+      arrowright: () => step(1),
+      g: () => document.getElementById("residuals")?.scrollIntoView(),
+      n: () => document.getElementById(NOTE_ID)?.focus(),
+      "shift+a": () => document.getElementById(APPROVE_ID)?.click(),
+      "shift+r": () => document.getElementById(RETURN_ID)?.click(),
+      "1": () => setAxis(axes[0]?.name ?? axis),
+      "2": () => setAxis(axes[1]?.name ?? axis),
+      "?": () => setKeysShown(true),
+    },
+    singleKeys,
+  );
   const axisLabel = axes.find(({ name }) => name === axis)?.label ?? axis;
   const level = useMemo(
     () => parseProtocol(shown.protocolDocument).uncertainty.level,
@@ -412,7 +441,7 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
         className="border-t border-rule bg-sheet p-4 lg:border-t-0 lg:border-l"
       >
         <div className="flex flex-col gap-6 lg:sticky lg:top-4">
-          {fit.state === "submitted" && fit.supersededAt === null && shown.may.review ? (
+          {mayDecide ? (
             <DecisionPanel
               hasOpenedResiduals={shown.hasOpenedResiduals}
               isBusy={isBusy}
@@ -478,11 +507,38 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
             </section>
           ) : null}
           <FitHistory fits={shown.history} shownId={fit.id} />
+          <button
+            aria-keyshortcuts="?"
+            className="min-h-6 self-start text-sm text-ink-2 underline decoration-edge underline-offset-3"
+            onClick={() => setKeysShown(true)}
+            type="button"
+          >
+            Keys
+          </button>
         </div>
       </aside>
+      <KeysDialog
+        enabled={singleKeys}
+        lines={mayDecide ? [...DECIDING_KEYS, ...FIT_KEYS] : FIT_KEYS}
+        onClose={() => setKeysShown(false)}
+        onEnable={setSingleKeys}
+        open={keysShown}
+      />
     </div>
   );
 }
+
+const FIT_KEYS: readonly KeyLine[] = [
+  { keys: ["←", "→"], what: "previous, next window" },
+  { keys: ["G"], what: "go to the residuals" },
+  { keys: ["1", "2"], what: "first, second axis" },
+  { keys: ["?"], what: "this list" },
+];
+const DECIDING_KEYS: readonly KeyLine[] = [
+  { keys: ["N"], what: "write the note" },
+  { keys: ["Shift", "A"], what: "approve" },
+  { keys: ["Shift", "R"], what: "return to the biomechanist" },
+];
 
 function titleOf({ participant, condition, posture }: Shown): string {
   return `${participant}, ${condition}, ${posture}`;

@@ -378,7 +378,8 @@ function useSaving(edits: ReturnType<typeof useEdits>, look: () => void): Saving
   const { revalidate } = useRevalidator();
   const [sent, setSent] = useState<Parameters<Saving["save"]> | null>(null);
   const [said, setSaid] = useState<string | null>(null);
-  const { saved } = edits;
+  const { saved, theirs } = edits;
+  const isToChoose = theirs !== null;
   const answer = fetcher.state === "idle" ? fetcher.data : undefined;
 
   // biome-ignore lint/correctness/useExhaustiveDependencies: each answer is taken up once.
@@ -400,6 +401,11 @@ function useSaving(edits: ReturnType<typeof useEdits>, look: () => void): Saving
       look();
     }
   }, [answer]);
+
+  // What the server said of two states is settled when one of them was chosen.
+  useEffect(() => {
+    if (isToChoose) return () => setSaid(null);
+  }, [isToChoose]);
 
   const save: Saving["save"] = (fit, windows) => {
     setSent([fit, windows]);
