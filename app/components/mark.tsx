@@ -24,15 +24,3 @@ export function Mark({ size = "brand" }: { size?: keyof typeof SIZES }) {
     </svg>
   );
 }
-
-/** "before ⟋ after": the divider between two states of one thing. */
-export function BeforeAfter({ before, after }: { before: string; after: string }) {
-  return (
-    <span className="inline-flex items-center gap-2">
-      {before}
-      <Mark size="place" />
-      <span className="sr-only">, then </span>
-      {after}
-    </span>
-  );
-}

@@ -18,10 +18,10 @@ export function StudyTable({
             <th className="max-md:hidden" scope="col">
               rig
             </th>
-            <th className="r" scope="col">
+            <th className="r max-md:hidden" scope="col">
               participants
             </th>
-            <th className="r" scope="col">
+            <th className="r max-md:hidden" scope="col">
               recordings
             </th>
             <StateHead state="recorded">no fit yet</StateHead>
@@ -43,8 +43,8 @@ export function StudyTable({
                 ) : null}
               </th>
               <td className="text-ink-2 max-md:hidden">{study.rigName ?? "–"}</td>
-              <td className="r num">{study.participants}</td>
-              <td className="r num">{study.recordings}</td>
+              <td className="r num max-md:hidden">{study.participants}</td>
+              <td className="r num max-md:hidden">{study.recordings}</td>
               <CountCell count={recordingsWithoutFit(study)} />
               <CountCell count={study.fits.draft} />
               <CountCell count={study.fits.submitted} />
@@ -62,9 +62,9 @@ export function StudyTable({
 function StateHead({ state, children }: { state: CellState; children: string }) {
   return (
     <th className="r" scope="col">
-      <span className="inline-flex items-center gap-1">
+      <span className="inline-flex items-center gap-1 align-bottom" title={children}>
         <StateMark silent state={state} />
-        {children}
+        <span className="max-md:sr-only">{children}</span>
       </span>
     </th>
   );

@@ -149,7 +149,9 @@ function RecordingTable({
         <thead>
           <tr>
             <th scope="col">file</th>
-            <th scope="col">participant</th>
+            <th className="max-md:hidden" scope="col">
+              participant
+            </th>
             <th scope="col">condition</th>
             {severalPostures ? <th scope="col">posture</th> : null}
             <th scope="col">state</th>
@@ -178,7 +180,7 @@ function RecordingTable({
                   <span className="unit block whitespace-normal">{one.refusal}</span>
                 ) : null}
               </th>
-              <td className="num">{one.participantCode}</td>
+              <td className="num max-md:hidden">{one.participantCode}</td>
               <td>{one.conditionName}</td>
               {severalPostures ? <td>{one.postureName}</td> : null}
               <td className="whitespace-nowrap">
