@@ -243,7 +243,11 @@ function StandingLine({
   const share = standing.kind === "sending" ? standing.share : 0;
   return (
     <>
-      <p className="flex min-h-6 flex-wrap items-center gap-x-2 text-sm">
+      <p
+        className={`flex min-h-6 flex-wrap items-center gap-x-2 gap-y-1 text-sm ${
+          standing.kind === "broken" ? "py-1" : ""
+        }`}
+      >
         {standing.kind === "ready" ? <StateMark silent state="recorded" /> : null}
         <span className={isWeighty ? "text-ink" : "text-ink-2"}>
           {isWeighty ? <Weighty words={standingInWords(standing)} /> : standingInWords(standing)}

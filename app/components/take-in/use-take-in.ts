@@ -159,16 +159,17 @@ function useReading(
         const { batch: now, study, chosenId: chosen } = held.current;
         const job = nextJob(now, study, chosen);
         const blob = job && blobs.current.get(job.id);
-        if (!job || !blob) return;
+        if (!job || !blob) {
+          // At once, not when the promise settles: a file may be added in between.
+          isBusy.current = false;
+          return;
+        }
         change(await runJob(job, blob, held.current.study, read, change));
       }
-    })()
-      .catch(() => {
-        // The page was left.
-      })
-      .finally(() => {
-        isBusy.current = false;
-      });
+    })().catch(() => {
+      // The page was left.
+      isBusy.current = false;
+    });
   }, [batch, chosenId, read]);
 }
 

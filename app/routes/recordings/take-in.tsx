@@ -169,8 +169,8 @@ function TakeInOfStudy({ shown }: { shown: Route.ComponentProps["loaderData"] })
         title="Uploads are under way"
       >
         <p>
-          {uploads} {unsent.length === 1 ? "is" : "are"} not at the end. Stay until they are ready,
-          or leave: what has not arrived whole is given up, and nothing of it is kept.
+          {uploads} not at the end yet. Stay until all is ready, or leave: what has not arrived
+          whole is given up, and nothing of it is kept.
         </p>
       </Dialog>
     </>
