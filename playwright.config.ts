@@ -15,6 +15,7 @@ export default defineConfig({
     browserName: "chromium",
     viewport: { width: 1280, height: 860 },
     locale: "en-GB",
+    actionTimeout: 20_000,
     trace: "retain-on-failure",
     launchOptions: { executablePath: findChromium() ?? undefined, args: CHROMIUM_ARGS },
   },
