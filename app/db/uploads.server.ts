@@ -23,13 +23,20 @@ export async function insertUpload(
   await tx.insert(uploads).values(row);
 }
 
+/** @returns false where the upload is no longer in the state `from`, and stays as it is */
 export async function endUpload(
   tx: Transaction,
   uploadId: string,
-  state: "finished" | "cancelled" | "refused",
+  from: UploadRow["state"],
+  to: "finished" | "cancelled" | "refused",
   endedAt: number,
-): Promise<void> {
-  await tx.update(uploads).set({ state, endedAt }).where(eq(uploads.id, uploadId));
+): Promise<boolean> {
+  const ended = await tx
+    .update(uploads)
+    .set({ state: to, endedAt })
+    .where(and(eq(uploads.id, uploadId), eq(uploads.state, from)))
+    .returning({ id: uploads.id });
+  return ended.length > 0;
 }
 
 /** The upload that the bytes of a recording came with, the newest where several did. */

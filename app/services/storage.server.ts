@@ -1,4 +1,5 @@
 import {
+  AbortMultipartUploadCommand,
   CompleteMultipartUploadCommand,
   CopyObjectCommand,
   CreateMultipartUploadCommand,
@@ -24,6 +25,8 @@ export interface Storage {
     multipartId: string,
     parts: { number: number; etag: string }[],
   ): Promise<void>;
+  /** Forgets the parts of an upload that was not finished; one that is gone already is no error. */
+  abortMultipart(key: string, multipartId: string): Promise<void>;
   put(key: string, bytes: Uint8Array): Promise<void>;
   copy(from: string, to: string): Promise<void>;
   /** Size in bytes, or null where there is no such object. */
@@ -38,8 +41,15 @@ export interface Storage {
 
 const PRESIGNED_S = 600;
 const READY_TIMEOUT_MS = 2000;
+const CONNECT_TIMEOUT_MS = 5000;
+/**
+ * A storage that says nothing for so long has failed: by default a request would wait for ever, and
+ * with it the background work. Copying the largest file inside a storage takes less.
+ */
+const SILENCE_TIMEOUT_MS = 120_000;
 
-export function createStorage(env: StorageEnv): Storage {
+/** @param silenceTimeoutMs  shorter for tests */
+export function createStorage(env: StorageEnv, silenceTimeoutMs = SILENCE_TIMEOUT_MS): Storage {
   const Bucket = env.bucket;
   // The client's packages are pinned to releases that run on this Node; it would warn of later ones.
   process.env.AWS_SDK_JS_NODE_VERSION_SUPPORT_WARNING_DISABLED ??= "true";
@@ -48,6 +58,7 @@ export function createStorage(env: StorageEnv): Storage {
     region: env.region,
     credentials: { accessKeyId: env.accessKeyId, secretAccessKey: env.secretAccessKey },
     forcePathStyle: true,
+    requestHandler: { connectionTimeout: CONNECT_TIMEOUT_MS, socketTimeout: silenceTimeoutMs },
     // The defaults put checksums into presigned addresses and into streams; not every storage that
     // speaks S3 knows them, and some keep them as part of the object. We hash what arrives ourselves.
     requestChecksumCalculation: "WHEN_REQUIRED",
@@ -92,6 +103,17 @@ export function createStorage(env: StorageEnv): Storage {
         }),
       );
     },
+    abortMultipart: async (key, multipartId) => {
+      try {
+        await client.send(
+          new AbortMultipartUploadCommand({ Bucket, Key: key, UploadId: multipartId }),
+        );
+      } catch (error) {
+        // Not there any more; or a small storage that has no such request, and keeps no bill.
+        const status = statusOf(error);
+        if (status !== 404 && status !== 405 && status !== 501) throw error;
+      }
+    },
     put: async (key, bytes) => {
       await client.send(new PutObjectCommand({ Bucket, Key: key, Body: bytes }));
     },
@@ -104,9 +126,7 @@ export function createStorage(env: StorageEnv): Storage {
         const head = await client.send(new HeadObjectCommand({ Bucket, Key: key }));
         return head.ContentLength ?? 0;
       } catch (error) {
-        if (error instanceof S3ServiceException && error.$metadata.httpStatusCode === 404) {
-          return null;
-        }
+        if (statusOf(error) === 404) return null;
         throw error;
       }
     },
@@ -129,4 +149,9 @@ export function createStorage(env: StorageEnv): Storage {
       }
     },
   };
+}
+
+/** What the storage answered with, or null where it did not answer. */
+function statusOf(error: unknown): number | null {
+  return error instanceof S3ServiceException ? (error.$metadata.httpStatusCode ?? null) : null;
 }

@@ -11,6 +11,7 @@ import {
 } from "#app/db/uploads.server.ts";
 import { notFound } from "#app/domain/refusal.ts";
 import type { Actor } from "#app/domain/role.ts";
+import { log } from "#app/services/log.server.ts";
 import type { Desk } from "./desk.server.ts";
 import { requireAbility } from "./permission.server.ts";
 
@@ -161,48 +162,55 @@ export async function cancelUpload(
   input: { uploadId: string },
 ): Promise<{ status: "cancelled" | "ended" }> {
   const upload = await getOwnUpload(desk, actor, input.uploadId);
-  if (upload.state !== "open") return { status: "ended" };
+  const { personId } = actor;
+  const isCancelled = await giveUp(desk, upload, { kind: "upload.cancelled", personId });
+  return { status: isCancelled ? "cancelled" : "ended" };
+}
+
+/** Gives up uploads of all labs that were left open for a day, and removes what they brought. */
+export async function endForgottenUploads(desk: Desk): Promise<number> {
+  const forgotten = await listForgottenUploads(
+    desk.store.db,
+    desk.clock.now() - FORGOTTEN_AFTER_MS,
+  );
+  let ended = 0;
+  for (const upload of forgotten) {
+    if (await giveUp(desk, upload, { kind: "upload.forgotten", personId: null })) ended += 1;
+  }
+  return ended;
+}
+
+/** @returns false where the upload was finished or given up meanwhile: nothing of it is touched */
+async function giveUp(
+  desk: Desk,
+  upload: UploadRow,
+  by: { kind: "upload.cancelled" | "upload.forgotten"; personId: string | null },
+): Promise<boolean> {
   const at = desk.clock.now();
-  const isCancelled = await desk.store.write(async (tx) => {
-    // It may have finished while this request waited for its turn.
-    const now = await findUpload(tx, actor.labId, upload.id);
-    if (now?.state !== "open") return false;
-    await endUpload(tx, upload.id, "cancelled", at);
+  const isGivenUp = await desk.store.write(async (tx) => {
+    if (!(await endUpload(tx, upload.id, "open", "cancelled", at))) return false;
     await recordEvent(tx, {
+      ...by,
       at,
-      labId: actor.labId,
-      personId: actor.personId,
-      kind: "upload.cancelled",
+      labId: upload.labId,
       objectType: "upload",
       objectId: upload.id,
       detail: { fileName: upload.fileName },
     });
     return true;
   });
-  if (isCancelled) await desk.storage.delete(upload.storageKey);
-  return { status: isCancelled ? "cancelled" : "ended" };
-}
-
-/** Gives up uploads of all labs that were left open for a day, and removes what they brought. */
-export async function endForgottenUploads(desk: Desk): Promise<number> {
-  const at = desk.clock.now();
-  const forgotten = await listForgottenUploads(desk.store.db, at - FORGOTTEN_AFTER_MS);
-  for (const upload of forgotten) {
-    await desk.store.write(async (tx) => {
-      await endUpload(tx, upload.id, "cancelled", at);
-      await recordEvent(tx, {
-        at,
-        labId: upload.labId,
-        personId: null,
-        kind: "upload.forgotten",
-        objectType: "upload",
-        objectId: upload.id,
-        detail: { fileName: upload.fileName },
-      });
-    });
-    await desk.storage.delete(upload.storageKey);
+  if (isGivenUp) {
+    try {
+      if (upload.multipartId !== null) {
+        await desk.storage.abortMultipart(upload.storageKey, upload.multipartId);
+      }
+      await desk.storage.delete(upload.storageKey);
+    } catch (error) {
+      // It is given up all the same; what it brought stays below incoming/ until somebody clears it.
+      log.warn({ err: error, key: upload.storageKey }, "An upload's bytes could not be removed");
+    }
   }
-  return forgotten.length;
+  return isGivenUp;
 }
 
 /**

@@ -20,12 +20,7 @@ import {
 } from "#app/db/recordings.server.ts";
 import { findRig, updateRigChannelMap } from "#app/db/rigs.server.ts";
 import { findStudy, findStudyPlan, listStudyAxes, updateStudy } from "#app/db/studies.server.ts";
-import {
-  endUpload,
-  findFinishedUpload,
-  findUpload,
-  type UploadRow,
-} from "#app/db/uploads.server.ts";
+import { endUpload, findFinishedUpload, type UploadRow } from "#app/db/uploads.server.ts";
 import { canonicalJson } from "#app/domain/canonical-json.ts";
 import { fileNamePatternProblem } from "#app/domain/file-name.ts";
 import { compileProtocol, defaultChoices, ProtocolError } from "#app/domain/protocol.ts";
@@ -89,17 +84,21 @@ export async function takeInRecording(desk: Desk, actor: Actor, input: TakeIn): 
   if (patternProblem) return { status: "refused", sentence: patternProblem, recordingId: null };
 
   const complete = await completeObject(desk, actor, upload, input.parts);
+  const ended = async () => endedUpload(desk, actor, await getOwnUpload(desk, actor, upload.id));
+  if (complete.status === "ended") return ended();
   if (complete.status !== "complete") return complete;
 
   const recordingId = desk.clock.newId();
   const at = desk.clock.now();
   const stored = await desk.store
     .write(async (tx) => {
-      const now = await findUpload(tx, actor.labId, upload.id);
-      if (now?.state !== "open") return { status: "ended" as const };
       const known = await findRecordingByHash(tx, actor.labId, upload.sha256);
-      if (known && known.state !== "refused") {
-        await endUpload(tx, upload.id, "cancelled", at);
+      const isKnown = known !== null && known.state !== "refused";
+      // Only one of two requests at once, or of a request and its upload's end, goes on.
+      if (!(await endUpload(tx, upload.id, "open", isKnown ? "cancelled" : "finished", at))) {
+        return { status: "ended" as const };
+      }
+      if (isKnown) {
         await recordEvent(tx, {
           at,
           labId: actor.labId,
@@ -136,7 +135,6 @@ export async function takeInRecording(desk: Desk, actor: Actor, input: TakeIn): 
       const id = known?.id ?? recordingId;
       if (known) await retryRecording(tx, known.id, row);
       else await insertRecording(tx, { ...row, id });
-      await endUpload(tx, upload.id, "finished", at);
       await rememberOnRig(tx, actor, at, place, input.map);
       await rememberPattern(tx, actor, at, upload.studyId, input.fileNamePattern);
       await recordEvent(tx, {
@@ -166,9 +164,7 @@ export async function takeInRecording(desk: Desk, actor: Actor, input: TakeIn): 
       return { status: "known" as const };
     });
 
-  if (stored.status === "ended") {
-    return endedUpload(desk, actor, await getOwnUpload(desk, actor, upload.id));
-  }
+  if (stored.status === "ended") return ended();
   if (stored.status === "known") {
     await desk.storage.delete(upload.storageKey);
     const recording = await findKnownRecording(desk, actor.labId, upload.sha256);
@@ -294,17 +290,24 @@ async function completeObject(
   actor: Actor,
   upload: UploadRow,
   parts: TakeIn["parts"],
-): Promise<{ status: "complete" } | Extract<TakenIn, { status: "incomplete" | "refused" }>> {
+): Promise<
+  | { status: "complete" }
+  /** Another request has finished or given it up. */
+  | { status: "ended" }
+  | Extract<TakenIn, { status: "incomplete" | "refused" }>
+> {
+  const isThere = async () => (await desk.storage.size(upload.storageKey)) === upload.sizeBytes;
   // Complete already where an earlier request got this far and no further.
-  if ((await desk.storage.size(upload.storageKey)) === upload.sizeBytes) {
-    return { status: "complete" };
-  }
+  if (await isThere()) return { status: "complete" };
   try {
     if (upload.multipartId !== null) {
       const inOrder = [...parts].sort((a, b) => a.number - b.number);
       await desk.storage.finishMultipart(upload.storageKey, upload.multipartId, inOrder);
     }
   } catch {
+    // Another request may have put the parts together at the same time, or gone further.
+    if (await isThere()) return { status: "complete" };
+    if ((await getOwnUpload(desk, actor, upload.id)).state !== "open") return { status: "ended" };
     return {
       status: "incomplete",
       sentence: `Parts of ${upload.fileName} did not reach the storage: try again.`,
@@ -313,8 +316,8 @@ async function completeObject(
   const size = await desk.storage.size(upload.storageKey);
   if (size === upload.sizeBytes) return { status: "complete" };
   const at = desk.clock.now();
-  await desk.store.write(async (tx) => {
-    await endUpload(tx, upload.id, "refused", at);
+  const isRefused = await desk.store.write(async (tx) => {
+    if (!(await endUpload(tx, upload.id, "open", "refused", at))) return false;
     await recordEvent(tx, {
       at,
       labId: actor.labId,
@@ -324,7 +327,9 @@ async function completeObject(
       objectId: upload.id,
       detail: { fileName: upload.fileName, expectedBytes: upload.sizeBytes, storedBytes: size },
     });
+    return true;
   });
+  if (!isRefused) return { status: "ended" };
   await desk.storage.delete(upload.storageKey);
   return {
     status: "refused",
@@ -413,7 +418,9 @@ async function verifyRecording(desk: Desk, labId: string, recordingId: string): 
   const at = desk.clock.now();
   const isSettled = await desk.store.write(async (tx) => {
     if (!(await endVerification(tx, recordingId, outcome))) return false;
-    if (outcome.state === "refused" && upload) await endUpload(tx, upload.id, "refused", at);
+    if (outcome.state === "refused" && upload) {
+      await endUpload(tx, upload.id, "finished", "refused", at);
+    }
     await recordEvent(tx, {
       at,
       labId,

@@ -51,6 +51,9 @@ export function memoryStorage(): MemoryStorage {
       objects.set(key, new Uint8Array(Buffer.concat(chunks)));
       uploads.delete(multipartId);
     },
+    abortMultipart: async (_key, multipartId) => {
+      uploads.delete(multipartId);
+    },
     put: async (key, bytes) => {
       objects.set(key, bytes.slice());
     },

@@ -1,5 +1,8 @@
 import { randomBytes } from "node:crypto";
+import { once } from "node:events";
 import { mkdtempSync, rmSync } from "node:fs";
+import { createServer } from "node:http";
+import type { AddressInfo } from "node:net";
 import { tmpdir } from "node:os";
 import { join } from "node:path";
 import { afterAll, beforeAll, describe, expect, it } from "vitest";
@@ -89,6 +92,26 @@ describe("storage that speaks S3", () => {
     const answer = await fetch(address, { method: "PUT", body: "late" });
     expect(answer.status).toBe(403);
   });
+
+  it("lets an upload be forgotten that was never finished", async () => {
+    const key = "incoming/upload-4";
+    await storage.abortMultipart(key, await storage.startMultipart(key));
+    await storage.abortMultipart(key, "no-such-upload");
+    expect(await storage.size(key)).toBeNull();
+  });
+
+  it("gives a storage up that takes the call and says nothing", async () => {
+    const silent = createServer(() => {}).listen(0, "127.0.0.1");
+    await once(silent, "listening");
+    const { port } = silent.address() as AddressInfo;
+    const asked = createStorage(
+      { endpoint: `http://127.0.0.1:${port}`, region: "us-east-1", bucket: BUCKET, ...FAKE_KEYS },
+      200,
+    );
+    await expect(asked.size("raw/lab-one/put")).rejects.toMatchObject({ name: "TimeoutError" });
+    silent.closeAllConnections();
+    silent.close();
+  }, 30_000);
 
   it("says null for the size of nothing, and throws on reading it", async () => {
     expect(await storage.size("raw/lab-one/nothing")).toBeNull();

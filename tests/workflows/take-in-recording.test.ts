@@ -133,6 +133,29 @@ describe("opening an upload", () => {
     expect((await findUpload(lab.store.db, lab.lab.id, uploadId))?.state).toBe("cancelled");
     expect(await eventKinds()).toContain("upload.forgotten");
   });
+
+  it("leaves an upload that is finished while the forgotten ones are ended", async () => {
+    const sent = await upload(lab, study, { bytes });
+    lab.desk.clock.advance(25 * 60 * 60 * 1000);
+    const input = { ...sent, ...placeOf(study, { bytes }) };
+    const { store } = lab.desk;
+    // It is listed as forgotten, and finished before it is this upload's turn.
+    const slow = {
+      ...lab.desk,
+      store: {
+        ...store,
+        write: async <T>(work: Parameters<typeof store.write<T>>[0]) => {
+          await takeInRecording(lab.desk, person(), input);
+          return store.write(work);
+        },
+      },
+    };
+    expect(await endForgottenUploads(slow)).toBe(0);
+    await background.settled();
+    const taken = await findTakenIn(lab.desk, person(), sent.uploadId);
+    expect(taken.status).toBe("ready");
+    expect(objects()).toEqual([`raw/${lab.lab.id}/${sha256Of(bytes)}`]);
+  });
 });
 
 describe("taking a recording in", () => {
@@ -187,6 +210,19 @@ describe("taking a recording in", () => {
     await background.settled();
     expect(both.map((taken) => taken.status).sort()).toEqual(["duplicate", "verifying"]);
     expect(objects()).toEqual([`raw/${lab.lab.id}/${sha256Of(bytes)}`]);
+  });
+
+  it("answers two requests for one upload at once alike, and takes it in once", async () => {
+    const sent = await upload(lab, study, { bytes });
+    const input = { ...sent, ...placeOf(study, { bytes }) };
+    const both = await Promise.all([
+      takeInRecording(lab.desk, person(), input),
+      takeInRecording(lab.desk, person(), input),
+    ]);
+    expect(both.map((taken) => taken.status)).toEqual(["verifying", "verifying"]);
+    await background.settled();
+    expect((await takeInRecording(lab.desk, person(), input)).status).toBe("ready");
+    expect(await listRecordings(lab.store.db, lab.lab.id, study.studyId)).toHaveLength(1);
   });
 
   it("keeps the same bytes of two labs apart", async () => {
@@ -355,6 +391,26 @@ describe("taking a recording in", () => {
 });
 
 describe("giving an upload up", () => {
+  it("leaves none of its parts in the storage", async () => {
+    const { uploadId } = await upload(lab, study, { bytes });
+    const multipartId = (await findUpload(lab.store.db, lab.lab.id, uploadId))?.multipartId ?? "";
+    await cancelUpload(lab.desk, person(), { uploadId });
+    expect(() => lab.desk.storage.putPart(`incoming/${uploadId}`, multipartId, 1, bytes)).toThrow(
+      "There is no upload",
+    );
+  });
+
+  it("gives up the others too where the storage does not answer for one", async () => {
+    await upload(lab, study, { bytes });
+    await upload(lab, study, { bytes: recordingBytes({ K: 3, B: 0.05, I: 0.004 }) });
+    lab.desk.clock.advance(25 * 60 * 60 * 1000);
+    const silent = {
+      ...lab.desk,
+      storage: { ...lab.desk.storage, delete: () => Promise.reject(new Error("no answer")) },
+    };
+    expect(await endForgottenUploads(silent)).toBe(2);
+  });
+
   it("ends it once, and it cannot be taken in after", async () => {
     const sent = await upload(lab, study, { bytes });
     expect(await cancelUpload(lab.desk, person(), sent)).toEqual({ status: "cancelled" });
