@@ -211,7 +211,7 @@ function Robustness({ tried }: { tried: NonNullable<ResultPooled["robustness"]> 
         K moves from <span className="num">{formatDigits(low, 3)}</span> to{" "}
         <span className="num">{formatDigits(high, 3)}</span> N·m/rad over the choices tried
       </summary>
-      <div className="wide">
+      <div className="wide max-w-md">
         <table className="rows">
           <caption className="sr-only">K in N·m/rad by window end and cut-off</caption>
           <thead>

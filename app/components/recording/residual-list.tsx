@@ -51,15 +51,21 @@ export function ResidualList({
         {shown.map((window) => (
           <li key={window.number}>
             <button
-              aria-label={`Window ${window.number}, ${window.words}, RMS ${formatDigits(window.rmsNm, 2)} N·m`}
               aria-pressed={window.number === chosen}
               className="block w-full border border-rule px-1.5 py-1 text-left hover:bg-hover aria-pressed:outline-2 aria-pressed:outline-ink"
               onClick={() => onChoose(window.number)}
               type="button"
             >
               <span className="flex justify-between font-mono text-sm text-ink-2">
-                <span>{window.number}</span>
-                <span>{formatDigits(window.rmsNm, 2)}</span>
+                <span>
+                  <span className="sr-only">Window </span>
+                  {window.number}
+                  <span className="sr-only">, {window.words}, RMS </span>
+                </span>
+                <span>
+                  {formatDigits(window.rmsNm, 2)}
+                  <span className="sr-only"> N·m</span>
+                </span>
               </span>
               <SmallResidual
                 reachNm={reachNm}

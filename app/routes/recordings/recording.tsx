@@ -588,7 +588,7 @@ function Notices({
       {problem ? (
         <Notice urgent>
           {problem.text}{" "}
-          <Button look="quiet" onClick={onRetry} type="button">
+          <Button className="ml-2" onClick={onRetry} type="button">
             Start the engine again
           </Button>
         </Notice>
@@ -597,7 +597,7 @@ function Notices({
         <Notice urgent>
           {saving.said}{" "}
           {saving.canRetry ? (
-            <Button busy={saving.isBusy} look="quiet" onClick={saving.retry} type="button">
+            <Button busy={saving.isBusy} className="ml-2" onClick={saving.retry} type="button">
               Send them again
             </Button>
           ) : null}
@@ -616,7 +616,7 @@ function Notices({
       {edits.left ? (
         <Notice>
           You went on with the other fit; your own edits are still here.{" "}
-          <Button look="quiet" onClick={edits.bringBack} type="button">
+          <Button className="ml-2" onClick={edits.bringBack} type="button">
             Bring mine back
           </Button>
         </Notice>
@@ -647,7 +647,7 @@ function OtherProtocol({
       they are.{" "}
       {others.length > 0 ? (
         <Button
-          look="quiet"
+          className="ml-2"
           onClick={() =>
             edits.change((list) =>
               axes.reduce((held, axis) => applyTrimToAll(held, axis, [...windowMs]), list),
