@@ -231,7 +231,7 @@ function expectSameNumbers(made: unknown, stored: unknown, path: string): void {
     return;
   }
   if (typeof made === "object" && made !== null && typeof stored === "object" && stored !== null) {
-    expect(Object.keys(made), path).toEqual(Object.keys(stored));
+    expect(Object.keys(made).sort(), path).toEqual(Object.keys(stored).sort());
     for (const [key, value] of Object.entries(made)) {
       expectSameNumbers(value, (stored as Record<string, unknown>)[key], `${path}.${key}`);
     }
