@@ -14,19 +14,29 @@ export interface EngineRefusal {
   field: string | null;
 }
 
-/** The engine in one thread of its own, started at the first call and used again. */
+/** The engine broke on this very input: a fault of ours, which the same input would meet again. */
+export interface EngineFailure {
+  status: "failed";
+  /** For the log, with where it happened. */
+  reason: string;
+}
+
+/**
+ * The engine in one thread of its own, started at the first call and used again. A call rejects
+ * where the thread is lost under it; the next one starts a new thread.
+ */
 export interface EngineThread {
   /** What a reader sees in the file. The bytes are moved away: the caller's array is empty after. */
   readFacts(
     bytes: Uint8Array<ArrayBuffer>,
     protocol: Protocol,
-  ): Promise<{ status: "read"; facts: RecordingFacts } | EngineRefusal>;
+  ): Promise<{ status: "read"; facts: RecordingFacts } | EngineRefusal | EngineFailure>;
   /** The whole analysis of one recording. The bytes are moved away too. */
   analyze(
     bytes: Uint8Array<ArrayBuffer>,
     protocol: Protocol,
     fit: { file: string; sha256: string; protocolSha256: string; windows: WindowsDocument },
-  ): Promise<{ status: "analyzed"; result: Result } | EngineRefusal>;
+  ): Promise<{ status: "analyzed"; result: Result } | EngineRefusal | EngineFailure>;
   /** Ends the thread; what is under way or comes later is rejected. */
   close(): Promise<void>;
 }
@@ -34,48 +44,58 @@ export interface EngineThread {
 type Outcome =
   | { status: "read"; facts: RecordingFacts }
   | { status: "analyzed"; result: Result }
-  | EngineRefusal;
+  | EngineRefusal
+  | EngineFailure;
 
-export function createEngineThread(): EngineThread {
-  let worker: Worker | null = null;
+interface Call {
+  resolve: (outcome: Outcome) => void;
+  reject: (error: Error) => void;
+}
+
+interface Running {
+  worker: Worker;
+  /** Calls that this thread has not answered; another thread's are not its to reject. */
+  waiting: Map<number, Call>;
+}
+
+/** @param thread  another script than the engine's, for tests */
+export function createEngineThread(thread = findThread()): EngineThread {
+  let running: Running | null = null;
   let lastId = 0;
   let isClosed = false;
-  const waiting = new Map<
-    number,
-    { resolve: (outcome: Outcome) => void; reject: (error: Error) => void }
-  >();
 
-  function start(): Worker {
+  function start(): Running {
     // The parent's own flags (a loader, an inspector) are not for the thread.
-    const started = new Worker(findThread(), { execArgv: [] });
-    started.on("message", (answer: { id: number; outcome?: Outcome; error?: string }) => {
+    const worker = new Worker(thread, { execArgv: [] });
+    const waiting = new Map<number, Call>();
+    const started = { worker, waiting };
+    worker.on("message", (answer: { id: number; outcome?: Outcome; error?: string }) => {
       const call = waiting.get(answer.id);
       waiting.delete(answer.id);
-      if (waiting.size === 0) started.unref();
-      if (answer.outcome) call?.resolve(answer.outcome);
-      else call?.reject(new Error(`The engine failed: ${answer.error ?? "no reason given"}`));
+      if (waiting.size === 0) worker.unref();
+      call?.resolve(answer.outcome ?? { status: "failed", reason: answer.error ?? "none given" });
     });
     const lost = (error: Error) => {
-      if (worker === started) worker = null;
+      if (running === started) running = null;
       for (const call of waiting.values()) call.reject(error);
       waiting.clear();
     };
-    started.on("error", lost);
-    started.on("exit", () => lost(new Error("The engine's thread ended.")));
+    worker.on("error", lost);
+    worker.on("exit", () => lost(new Error("The engine's thread ended.")));
     return started;
   }
 
   function call(bytes: Uint8Array<ArrayBuffer>, task: object): Promise<Outcome> {
     if (isClosed) return Promise.reject(new Error("The engine's thread is closed."));
-    worker ??= start();
-    const thread = worker;
+    running ??= start();
+    const { worker, waiting } = running;
     lastId += 1;
     const id = lastId;
     return new Promise((resolve, reject) => {
+      worker.postMessage({ id, bytes, ...task }, [bytes.buffer]);
       waiting.set(id, { resolve, reject });
       // An idle thread keeps no process alive, a busy one does.
-      thread.ref();
-      thread.postMessage({ id, bytes, ...task }, [bytes.buffer]);
+      worker.ref();
     });
   }
 
@@ -92,7 +112,7 @@ export function createEngineThread(): EngineThread {
     },
     close: async () => {
       isClosed = true;
-      await worker?.terminate();
+      await running?.worker.terminate();
     },
   };
 }

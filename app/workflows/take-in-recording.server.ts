@@ -23,7 +23,12 @@ import { findStudy, findStudyPlan, listStudyAxes, updateStudy } from "#app/db/st
 import { endUpload, findFinishedUpload, type UploadRow } from "#app/db/uploads.server.ts";
 import { canonicalJson } from "#app/domain/canonical-json.ts";
 import { fileNamePatternProblem } from "#app/domain/file-name.ts";
-import { compileProtocol, defaultChoices, ProtocolError } from "#app/domain/protocol.ts";
+import {
+  compileProtocol,
+  defaultChoices,
+  type ProtocolChoices,
+  ProtocolError,
+} from "#app/domain/protocol.ts";
 import {
   type RecordingFacts,
   type RecordingMap,
@@ -33,6 +38,7 @@ import { notFound } from "#app/domain/refusal.ts";
 import { rememberMap, rigMapSchema } from "#app/domain/rig-map.ts";
 import type { Actor } from "#app/domain/role.ts";
 import type { Protocol } from "#app/engine/types.ts";
+import { log } from "#app/services/log.server.ts";
 import { background } from "./background.server.ts";
 import type { Desk } from "./desk.server.ts";
 import { findKnownRecording, getOwnUpload, type KnownRecording } from "./open-upload.server.ts";
@@ -461,6 +467,14 @@ async function checkCopy(
   const { bytes, sha256 } = await readHashed(desk.storage, row);
   if (sha256 !== row.sha256) return damaged;
   const outcome = await background.engine.readFacts(bytes, await protocolForReading(desk, row));
+  if (outcome.status === "failed") {
+    // Tried again and again it would stay unread, and nobody would be told.
+    log.error({ reason: outcome.reason, recordingId: row.id }, "The engine failed on a file");
+    return {
+      state: "refused",
+      refusal: `${row.fileName} could not be read because of a fault in Ogee: tell whoever runs it in your lab.`,
+    };
+  }
   if (outcome.status === "refused") {
     const at = outcome.line === null ? "" : `, line ${outcome.line}`;
     return { state: "refused", refusal: `${row.fileName}${at}: ${outcome.sentence}` };
@@ -468,15 +482,21 @@ async function checkCopy(
   return { state: "ready", facts: canonicalJson(outcome.facts) };
 }
 
-/** A reader needs the map and little else; the study's newest choices say the rest. */
+/**
+ * A reader needs the map and little else; the study's newest choices say the rest. Where those ask
+ * for what this recording lacks (a trigger), it is read all the same: a fit will say so.
+ */
 async function protocolForReading(desk: Desk, row: RecordingRow): Promise<Protocol> {
   const latest = await findLatestProtocol(desk.store.db, row.studyId);
-  const { protocol } = compileProtocol({
-    choices: latest ? readChoices(latest.choices) : defaultChoices,
-    map: readMap(row.channelMap),
-    axes: await listStudyAxes(desk.store.db, row.studyId),
-    geometry: {},
-    rig: null,
-  });
-  return protocol;
+  const axes = await listStudyAxes(desk.store.db, row.studyId);
+  const compile = (choices: ProtocolChoices) => {
+    const map = readMap(row.channelMap);
+    return compileProtocol({ choices, map, axes, geometry: {}, rig: null }).protocol;
+  };
+  try {
+    return compile(latest ? readChoices(latest.choices) : defaultChoices);
+  } catch (error) {
+    if (!(error instanceof ProtocolError)) throw error;
+    return compile(defaultChoices);
+  }
 }

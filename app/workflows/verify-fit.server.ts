@@ -10,6 +10,7 @@ import { getRecording } from "#app/db/recordings.server.ts";
 import { compareResults, differenceSentence, windowsDocumentOf } from "#app/domain/fit.ts";
 import { parseProtocol } from "#app/domain/protocol.ts";
 import type { Result } from "#app/engine/types.ts";
+import { log } from "#app/services/log.server.ts";
 import { background } from "./background.server.ts";
 import type { Desk } from "./desk.server.ts";
 import { readHashed } from "./read-hashed.server.ts";
@@ -66,6 +67,11 @@ async function findDifference(desk: Desk, fit: FitRow): Promise<string | null> {
     protocolSha256: fit.protocolSha256,
     windows: windowsDocumentOf(recording.sha256, windows),
   });
+  if (outcome.status === "failed") {
+    // Tried again and again it would stay unverified, and nobody would be told.
+    log.error({ reason: outcome.reason, fitId: fit.id }, "The engine failed on a fit");
+    return "The server could not compute this fit because of a fault in Ogee: tell whoever runs it in your lab.";
+  }
   if (outcome.status === "refused") {
     return `The server could not compute this fit: ${outcome.sentence}`;
   }

@@ -294,6 +294,20 @@ describe("the server's second look", () => {
     });
   });
 
+  it("marks a fit that the engine breaks on, instead of trying for ever", async () => {
+    const input = await fitOf(lab, recordingId);
+    vi.spyOn(background.engine, "analyze").mockResolvedValueOnce({
+      status: "failed",
+      reason: "RangeError: out of bounds",
+    });
+    const stored = await storeFit(lab.desk, person(), input);
+    if (stored.status !== "saved") throw new Error(stored.sentence);
+    await background.settled();
+    const { fit } = await getFit(lab.store.db, lab.lab.id, stored.fitId);
+    expect(fit.verification).toBe("differs");
+    expect(fit.verificationNote).toMatch(/because of a fault in Ogee/);
+  });
+
   it("accepts a result of another engine version whose numbers agree", async () => {
     const input = await fitOf(lab, recordingId);
     const stored = await storeFit(lab.desk, person(), {

@@ -5,6 +5,7 @@ import { findRigByName } from "#app/db/rigs.server.ts";
 import { recordings } from "#app/db/schema.ts";
 import { findStudy } from "#app/db/studies.server.ts";
 import { findUpload } from "#app/db/uploads.server.ts";
+import { defaultChoices } from "#app/domain/protocol.ts";
 import { mapForSide, rigMapSchema } from "#app/domain/rig-map.ts";
 import { background } from "#app/workflows/background.server.ts";
 import {
@@ -15,6 +16,7 @@ import {
   renewParts,
 } from "#app/workflows/open-upload.server.ts";
 import { resumeWork } from "#app/workflows/resume-work.server.ts";
+import { addProtocol } from "#app/workflows/set-up-study.server.ts";
 import {
   findTakenIn,
   settleSoon,
@@ -292,6 +294,45 @@ describe("taking a recording in", () => {
     expect(settled).toMatchObject({ status: "ready", recordingId: refused.recordingId });
     const row = await findRecording(lab.store.db, lab.lab.id, refused.recordingId ?? "");
     expect(row).toMatchObject({ state: "ready", refusal: null });
+  });
+
+  it("refuses a file that the engine breaks on, instead of trying for ever", async () => {
+    vi.spyOn(background.engine, "readFacts").mockResolvedValueOnce({
+      status: "failed",
+      reason: "RangeError: out of bounds",
+    });
+    const taken = await takeIn(lab, study, { bytes });
+    expect(await settleSoon(lab.desk, person(), taken)).toMatchObject({
+      status: "refused",
+      sentence:
+        "W01_off.csv could not be read because of a fault in Ogee: tell whoever runs it in your lab.",
+    });
+  });
+
+  it("leaves a file unread whose bytes broke off on their way from the storage, and reads it later", async () => {
+    const { storage } = lab.desk;
+    const stream = vi.spyOn(storage, "stream").mockImplementationOnce(async (key) => {
+      const whole = await storage.read(key);
+      return { body: new Blob([whole.slice(0, 100)]).stream(), sizeBytes: whole.length };
+    });
+    const taken = await takeIn(lab, study, { bytes });
+    expect((await settleSoon(lab.desk, person(), taken)).status).toBe("verifying");
+    stream.mockRestore();
+    await resumeWork(lab.desk);
+    await background.settled();
+    expect((await settleSoon(lab.desk, person(), taken)).status).toBe("ready");
+  });
+
+  it("reads a file without a trigger where the study's protocol finds onsets by one", async () => {
+    const added = await addProtocol(lab.desk, person(), {
+      studyId: study.studyId,
+      basedOnProtocolId: study.protocolId,
+      choices: { ...defaultChoices, onset: { ...defaultChoices.onset, from: "trigger" } },
+      note: "",
+    });
+    expect(added.status).toBe("added");
+    const taken = await takeIn(lab, study, { bytes });
+    expect((await settleSoon(lab.desk, person(), taken)).status).toBe("ready");
   });
 
   it.each([
