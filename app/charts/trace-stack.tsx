@@ -41,7 +41,9 @@ export interface TraceStackHandle {
 }
 
 const GUTTER_PX = 100;
-const NARROW_GUTTER_PX = 46;
+const NARROW_GUTTER_PX = 54;
+/** Room for a quantity's name beside its tick labels. */
+const TITLE_PX = 58;
 const NARROW_PX = 560;
 /** A press that moves less than this is a click. */
 const CLICK_PX = 4;
@@ -267,7 +269,7 @@ export function TraceStack({
               className={`pointer-events-none absolute flex text-sm ${
                 narrow ? "top-0.5 gap-1.5 bg-paper/80 px-1" : "top-0.5 left-0 flex-col"
               }`}
-              style={narrow ? { left: gutterPx + 2 } : undefined}
+              style={narrow ? { left: gutterPx + 2 } : { maxWidth: TITLE_PX }}
             >
               <span>{pane.title}</span>
               <span className="font-mono text-ink-2">{pane.unit}</span>

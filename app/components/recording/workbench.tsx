@@ -368,6 +368,25 @@ export function Workbench({
   const toUndo = edits.list === null ? null : editToUndo(edits.list);
   const toRedo = edits.list === null ? null : editToRedo(edits.list);
 
+  const zoomButtons = (
+    <fieldset aria-label="Zoom" className="flex gap-1">
+      <ZoomButton label="zoom out" onClick={() => zoom(NEAR_STEP, middleS)}>
+        −
+      </ZoomButton>
+      <ZoomButton label="zoom in" onClick={() => zoom(1 / NEAR_STEP, middleS)}>
+        +
+      </ZoomButton>
+      {view.kind === "near" ? (
+        <ZoomButton label="of the recording" onClick={actions.whole}>
+          All
+        </ZoomButton>
+      ) : (
+        <ZoomButton label="window" onClick={actions.near}>
+          One
+        </ZoomButton>
+      )}
+    </fieldset>
+  );
   const links = (
     <>
       <button
@@ -482,28 +501,15 @@ export function Workbench({
             sampleMs={sampleMs}
             stretch={stretch}
           />
-          <fieldset aria-label="Zoom" className="absolute bottom-0 left-0 flex gap-1">
-            <ZoomButton label="zoom out" onClick={() => zoom(NEAR_STEP, middleS)}>
-              −
-            </ZoomButton>
-            <ZoomButton label="zoom in" onClick={() => zoom(1 / NEAR_STEP, middleS)}>
-              +
-            </ZoomButton>
-            {view.kind === "near" ? (
-              <ZoomButton label="of the recording" onClick={actions.whole}>
-                All
-              </ZoomButton>
-            ) : (
-              <ZoomButton label="window" onClick={actions.near}>
-                One
-              </ZoomButton>
-            )}
-          </fieldset>
+          <div className="absolute bottom-0 left-0 hidden sm:block">{zoomButtons}</div>
           <div className="absolute bottom-0 left-[104px] hidden gap-2 text-sm text-ink-2 sm:flex">
             {links}
           </div>
         </div>
-        <div className="flex gap-2 text-sm text-ink-2 sm:hidden">{links}</div>
+        <div className="flex gap-3 text-sm sm:hidden">
+          {zoomButtons}
+          {links}
+        </div>
         <div className="my-3 flex flex-wrap items-center gap-2">
           <Button
             disabled={chosenIndex <= 0}
