@@ -44,7 +44,9 @@ export async function measureRig(
       };
     }
   }
-  await desk.storage.put(`raw/${actor.labId}/${sha256}`, input.bytes);
+  // Beside the recordings' addresses: a refused recording of the same bytes is cleared away.
+  const storageKey = `raw/${actor.labId}/rigs/${sha256}`;
+  await desk.storage.put(storageKey, input.bytes);
   const at = desk.clock.now();
   await desk.store.write(async (tx) => {
     const values = Object.fromEntries(
@@ -58,7 +60,7 @@ export async function measureRig(
       kind: "rig.measured",
       objectType: "rig",
       objectId: input.rigId,
-      detail: { fileName: input.fileName, sha256, impedance: values },
+      detail: { fileName: input.fileName, sha256, storageKey, impedance: values },
     });
   });
   return { status: "measured", impedance: rig };
