@@ -40,8 +40,15 @@ export function ParticipantFigure({
   const bottom = height - MARGIN.bottom;
 
   return (
-    <div className="wide" ref={place}>
-      <svg aria-label={title} className="block" height={height} role="img" width={width}>
+    <div ref={place}>
+      <svg
+        aria-label={title}
+        className="block h-auto max-w-full"
+        height={height}
+        role="img"
+        viewBox={`0 0 ${width} ${height}`}
+        width={width}
+      >
         {ticks.map((tick) => (
           <g key={tick}>
             <path

@@ -27,7 +27,8 @@ async function submitOne() {
   return { recordingId, fitId: saved.fitId };
 }
 
-describe("what a lab's own page counts and tells", () => {
+// A whole analysis runs twice in each; a busy machine needs its time.
+describe("what a lab's own page counts and tells", { timeout: 20_000 }, () => {
   it("counts participants, recordings and current fits by their state", async () => {
     await submitOne();
     const [summary] = await listStudies(lab.store.db, lab.lab.id);
