@@ -97,6 +97,7 @@ export function TraceStack({
   );
   const overlay = useRef<HTMLDivElement>(null);
   const pinned = useRef<number | null>(null);
+  const cursor = useRef<number | null>(null);
   const range = useRef({ fromS, toS });
   range.current = { fromS, toS };
 
@@ -142,6 +143,8 @@ export function TraceStack({
     draw(time, scenes) {
       lastDraw.current = { time, scenes };
       drawAll(plots.current, time, scenes);
+      // Range or values are new under a cursor that stays at its time.
+      placeCursor(cursor.current);
     },
     mark(marks) {
       const style = root.current?.style;
@@ -164,7 +167,8 @@ export function TraceStack({
     },
   }));
 
-  function showCursor(atS: number | null) {
+  /** @returns whether that time is in view */
+  function placeCursor(atS: number | null): boolean {
     const style = root.current?.style;
     const { fromS: from, toS: to } = range.current;
     const visible = atS !== null && atS >= from && atS <= to;
@@ -177,7 +181,12 @@ export function TraceStack({
       const scene = drawn?.scenes[key];
       element.textContent = visible && drawn && scene ? valueAt(drawn.time.timeS, scene, atS) : "";
     }
-    onCursor(visible ? atS : null);
+    return visible;
+  }
+
+  function showCursor(atS: number | null) {
+    cursor.current = atS;
+    onCursor(placeCursor(atS) ? atS : null);
   }
 
   function timeAt(clientX: number): number {
