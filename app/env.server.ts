@@ -35,6 +35,9 @@ export class EnvError extends Error {
   }
 }
 
+/** Characters of a session secret. */
+export const SHORTEST_SECRET = 32;
+
 const LOOPBACK = ["127.0.0.1", "localhost", "::1"];
 
 function webAddress(example: string) {
@@ -58,7 +61,10 @@ const settings = z.object({
     .regex(/^(file|libsql|https?|wss?):/, "must start with file:, libsql:, https: or wss:")
     .optional(),
   DATABASE_AUTH_TOKEN: z.string().optional(),
-  SESSION_SECRET: z.string().min(32, "must have at least 32 characters").optional(),
+  SESSION_SECRET: z
+    .string()
+    .min(SHORTEST_SECRET, `must have at least ${SHORTEST_SECRET} characters`)
+    .optional(),
   OGEE_DEMO: z.enum(["0", "1"], "must be 1 for the demo, or be left out").default("0"),
   S3_ENDPOINT: webAddress("https://storage.example").optional(),
   S3_REGION: z.string().default("us-east-1"),

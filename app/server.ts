@@ -55,8 +55,13 @@ export async function closing(): Promise<void> {
 
 export const app = express();
 app.disable("x-powered-by");
-// Proxies on this machine or its private network say by which address and scheme they were asked.
-app.set("trust proxy", "loopback, linklocal, uniquelocal");
+// This server speaks http: where browsers come by https, something on this machine or its private
+// network stands in between, and says by which address and scheme it was asked. Where they come by
+// http, others of that network may be browsers, and would choose the address that tries are counted by.
+app.set(
+  "trust proxy",
+  env.publicUrl.protocol === "https:" ? "loopback, linklocal, uniquelocal" : "loopback",
+);
 
 app.use(logRequests());
 app.use(secureHeaders(env));
