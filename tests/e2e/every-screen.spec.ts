@@ -96,7 +96,7 @@ for (const [role, screens] of Object.entries(SCREENS) as [Role, Screen[]][]) {
   test(`the screens of the ${role} are well made: ${screens.map(({ name }) => name).join(", ")}`, async ({
     page,
   }) => {
-    test.setTimeout(180_000);
+    test.setTimeout(300_000);
     await signInToDemo(page, role);
     for (const screen of screens) {
       await page.goto(demoAddress() + (await screen.path(page)));

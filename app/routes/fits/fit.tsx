@@ -420,7 +420,7 @@ export default function FitPage({ loaderData }: Route.ComponentProps) {
             <span className="flex flex-wrap gap-x-3">
               {["protocol.json", "windows.json", "result.json"].map((document) => (
                 <a
-                  className="link font-mono"
+                  className="link inline-block min-h-6 font-mono"
                   download
                   href={`/fits/${fit.id}/${document}`}
                   key={document}
