@@ -14,8 +14,10 @@ test("a fit is approved only after its residuals were opened, and returned only 
 
   const giveBack = page.getByRole("button", { name: /^Return/ });
   await giveBack.click();
-  await expect(page.getByRole("alert").first()).toContainText(/note/);
-  await page.getByLabel(/note/i).first().fill("Window 4 begins late: look at its onset again.");
+  await expect(page.getByText("Say what should be changed, then return it.")).toBeVisible();
+  await page
+    .getByLabel("Note to the biomechanist")
+    .fill("Window 4 begins late: look at its onset again.");
   await giveBack.click();
   await expect(page.getByText("returned").first()).toBeVisible();
 
