@@ -31,6 +31,8 @@ const PREAMBLE_LINES = 200;
 const ROWS_TRIED = 2000;
 /** Rows after a line that decide whether it can be the names above them. */
 const ROWS_BELOW = 20;
+/** Added to the rank of names that hold all that is looked for: they go before any others. */
+const WANTED = 4;
 
 /** A row that is not blank. */
 interface Row {
@@ -73,10 +75,18 @@ const SEPARATORS = [",", ";", "\t", "|", " "] as const;
  * above rows of the same width, and then the one with the largest share of numbers.
  *
  * @param cut  the bytes are only a part of the file
+ * @param wanted  names that are looked for: of several lines that could be the names, one that holds
+ *   all of these is taken (a table of settings may stand above the recorded one)
  * @throws EngineError "unreadable" where no line of names stands above rows of numbers
  */
-export function findLayout(decoded: Decoded, table: TableProtocol, cut: boolean): Layout {
+export function findLayout(
+  decoded: Decoded,
+  table: TableProtocol,
+  cut: boolean,
+  wanted: readonly string[] = [],
+): Layout {
   const { bytes } = decoded;
+  const sure = 3 + (wanted.length > 0 ? WANTED : 0);
   const forced = table.header_row;
   const start = forced === "auto" ? { offset: 0, line: 1 } : startOfLine(bytes, forced, cut);
   let best: { reading: Reading; text: string } | null = null;
@@ -86,13 +96,12 @@ export function findLayout(decoded: Decoded, table: TableProtocol, cut: boolean)
       /\r\n?/g,
       "\n",
     );
-    const reading = bestReading(text, start.line, table);
+    const reading = bestReading(text, start.line, table, wanted);
     if (reading !== null && (best === null || reading.rank >= best.reading.rank)) {
       best = { reading, text };
     }
-    if (end >= bytes.length || (best !== null && best.reading.rank >= 3 && best.reading.markSeen)) {
-      break;
-    }
+    if (end >= bytes.length) break;
+    if (best !== null && best.reading.rank >= sure && best.reading.markSeen) break;
   }
   if (best === null) throw noNames(table);
   const { reading } = best;
@@ -151,7 +160,12 @@ function headEnd(
   return cut && whole > start.offset ? whole : bytes.length;
 }
 
-function bestReading(text: string, firstLine: number, table: TableProtocol): Reading | null {
+function bestReading(
+  text: string,
+  firstLine: number,
+  table: TableProtocol,
+  wanted: readonly string[],
+): Reading | null {
   const separators =
     table.separator === "auto" ? SEPARATORS.filter((s) => text.includes(s)) : [table.separator];
   const decimals: Dialect["decimal"][] =
@@ -168,7 +182,7 @@ function bestReading(text: string, firstLine: number, table: TableProtocol): Rea
       const rows = rowsOf(text.slice(from), line, dialect.separator, dialect.runs);
       for (const decimal of decimals) {
         if (forced && rows[0]?.line !== firstLine) continue;
-        const reading = read(rows, { ...dialect, decimal }, forced);
+        const reading = read(rows, { ...dialect, decimal }, forced, wanted);
         if (reading !== null) readings.push(reading);
       }
     }
@@ -238,6 +252,7 @@ function read(
   rows: Row[],
   dialect: { separator: Dialect["separator"]; runs: boolean; decimal: Dialect["decimal"] },
   forced: boolean,
+  wanted: readonly string[],
 ): Reading | null {
   const kinds = rows.map(({ cells }) =>
     Uint8Array.from(cells, (cell) =>
@@ -247,12 +262,12 @@ function read(
   let best: { header: number; names: Names } | null = null;
   const tried = Math.min(rows.length, forced ? 1 : ROWS_TRIED);
   for (let header = 0; header < tried; header++) {
-    const names = namesAt(rows, kinds, header, forced);
+    const names = namesAt(rows, kinds, header, forced, wanted);
     if (names === null) continue;
     // The first of the highest rank; where nothing fits, the last above the numbers is to blame.
     const nearer = names.rank === 0 && best?.names.rank === 0;
     if (best === null || names.rank > best.names.rank || nearer) best = { header, names };
-    if (best.names.rank === 4) break;
+    if (best.names.rank === 4 + (wanted.length > 0 ? WANTED : 0)) break;
   }
   if (best === null) return null;
   const { header, names } = best;
@@ -276,16 +291,25 @@ interface Names {
  * Whether row `at` can be the names of the rows below it.
  *
  * Ranks: 4 names above rows of numbers; 3 the same, but fewer than five rows of them before another
- * kind of row (a small table above the recorded one gives way to that); 2 names, and most of the
- * rows below are of numbers; 1 some of the names are whole numbers; 0 names, but the rows below do
- * not fit them.
+ * kind of row (a small table above the recorded one gives way to that), or a column without a name
+ * (an index); 2 names, and most of the rows below are of numbers; 1 some of the names are whole
+ * numbers; 0 names, but the rows below do not fit them. Names that hold all that is looked for rank
+ * `WANTED` higher.
  */
-function namesAt(rows: Row[], kinds: Uint8Array[], at: number, forced: boolean): Names | null {
+function namesAt(
+  rows: Row[],
+  kinds: Uint8Array[],
+  at: number,
+  forced: boolean,
+  wanted: readonly string[],
+): Names | null {
   const { cells } = rows[at] as Row;
-  const width = cells.length > 1 && cells.at(-1) === "" ? cells.length - 1 : cells.length;
+  const isWanted = wanted.length > 0 && wanted.every((name) => cells.includes(name));
+  const width = widthOf(rows, at);
   if (width < 2 && !forced) return null;
   const isName = cells.slice(0, width).map((cell) => cell !== "" && !looksNumeric(cell));
-  if (!isName.includes(true)) return null;
+  const hasWord = isName.some((name, c) => name && !isMissing(cells[c] as string));
+  if (!hasWord && !isWanted) return null;
 
   const below: number[] = [];
   for (let i = at + 1; i < rows.length && i <= at + ROWS_BELOW + 1; i++) below.push(i);
@@ -312,14 +336,26 @@ function namesAt(rows: Row[], kinds: Uint8Array[], at: number, forced: boolean):
     numeric.some((c) => kind(i, c) === NUMBER);
   const other = below.findIndex((i) => !isData(i));
   const run = other < 0 ? below.length : other;
-  if (numeric.every((c) => isName[c])) {
-    if (run > 0) return { ...found, rank: run >= 5 || other < 0 ? 4 : 3 };
-    return 2 * below.filter(isData).length >= below.length ? { ...found, rank: 2 } : null;
+  const above = isWanted ? WANTED : 0;
+  if (numeric.every((c) => isName[c] || cells[c] === "")) {
+    const certain = (run >= 5 || other < 0) && !cells.slice(0, width).includes("");
+    if (run > 0) return { ...found, rank: above + (certain ? 4 : 3) };
+    return 2 * below.filter(isData).length >= below.length ? { ...found, rank: above + 2 } : null;
   }
   const words = numeric.filter((c) => isName[c]).length;
   const oddNames =
     words >= 2 && run > 0 && numeric.every((c) => isName[c] || /^\d+$/.test(cells[c] as string));
-  return oddNames || forced ? { ...found, rank: 1 } : null;
+  return oddNames || forced || (isWanted && run > 0) ? { ...found, rank: above + 1 } : null;
+}
+
+/** Cells of a row of names; a last empty one is a trailing separator's unless the rows below fill it. */
+function widthOf(rows: Row[], at: number): number {
+  const { cells } = rows[at] as Row;
+  const width = cells.length;
+  if (width < 2 || cells.at(-1) !== "") return width;
+  const below = rows.slice(at + 1, at + 1 + ROWS_BELOW);
+  const filled = below.filter((row) => row.cells.length === width && row.cells.at(-1) !== "");
+  return 2 * filled.length > below.length ? width : width - 1;
 }
 
 /** A number with whichever decimal mark. */

@@ -174,6 +174,12 @@ describe("previewTable", () => {
     });
   });
 
+  it("keeps columns without a name beside named ones, and prefers a line that names all", () => {
+    const rows = Array.from({ length: 30 }, (_, i) => `${i},0.5,-1.25`).join("\n");
+    expect(tableOf(`,ang,trq\n${rows}`).header).toEqual(["", "ang", "trq"]);
+    expect(tableOf(`a,,\nt,ang,trq\n${rows}`).header).toEqual(NAMES);
+  });
+
   it("takes whole numbers among the names for names", () => {
     expect(tableOf(`t,ang,1\n${rows(",", ".")}`)).toMatchObject({ header: ["t", "ang", "1"] });
   });

@@ -57,6 +57,38 @@ describe("readTable", () => {
     expect(columnOf("t, ang ,Ang\n0,1,2\n1,3,4\n", "Ang")).toEqual([2, 4]);
   });
 
+  it("reads beside columns without a name: an index first, one in the middle, one at the end", () => {
+    const rows = Array.from({ length: 30 }, (_, i) => `${i},7,0.5,x,-1.25`).join("\n");
+    for (const names of [",t,ang,,trq", "i,t,,ang,trq", "t,,ang,trq,"]) {
+      const table = read(`${names}\n${rows.replaceAll(",x", ",8")}\n`);
+      expect(table.header).toEqual(names.split(","));
+      expect([...table.columns.values()].map((column) => column.length)).toEqual([30, 30, 30]);
+    }
+    expect(read(`t,ang,trq,,\n${rows}\n`).header).toHaveLength(5);
+  });
+
+  it("finds the line that names what is mapped below a table of settings as wide", () => {
+    const settings = `ch,gain,off\n${"1,2,3\n".repeat(8)}\n`;
+    const table = read(`${settings}t,ang,trq\n${"0,0.5,1\n".repeat(30)}`);
+    expect(table.dialect.headerLine).toBe(11);
+    expect(table.rows).toBe(30);
+  });
+
+  it("takes whole numbers for names where they are what is mapped", () => {
+    const rows = "0,0.5,1\n".repeat(30);
+    expect(read(`t,1,2\n${rows}`, ["t", "1", "2"]).rows).toBe(30);
+    expect(read(`0,1,2\n${rows}`, ["0", "1", "2"], { header_row: 1 }).rows).toBe(30);
+  });
+
+  it("never takes a first row of missing cells for the names", () => {
+    const rows = "0,0.5,1\n".repeat(30);
+    for (const first of [",nan,nan", "NaN,NaN,NaN", "-,NA,n/a", "null,,"]) {
+      const table = read(`t,ang,trq\n${first}\n${rows}`);
+      expect(table.rows).toBe(31);
+      expect([...(table.columns.get("ang") ?? [])].slice(0, 2)).toEqual([Number.NaN, 0.5]);
+    }
+  });
+
   it("refuses a mapped name that is missing and says which there are", () => {
     expect(refusal("x\nt,ang,Trq\n0,1,2\n1,2,3\n")).toEqual({
       name: "unreadable",

@@ -19,8 +19,8 @@ export function readTable(
   columns: readonly string[],
 ): Table {
   const decoded = decode(file);
-  const layout = findLayout(decoded, table, decoded.bytes.length > HEAD_BYTES);
   const names = [...new Set(columns.map((name) => name.trim()))];
+  const layout = findLayout(decoded, table, decoded.bytes.length > HEAD_BYTES, names);
   const slots = slotsOf(layout, names);
   const scan = scanRows(decoded.bytes, layout, slots, names.length);
   if (scan.rows === 0) {
