@@ -1,4 +1,5 @@
 import { PassThrough } from "node:stream";
+import { createGzip } from "node:zlib";
 import { createReadableStreamFromReadable } from "@react-router/node";
 import { isbot } from "isbot";
 import { type RenderToPipeableStreamOptions, renderToPipeableStream } from "react-dom/server";
@@ -9,7 +10,7 @@ import {
   type RouterContextProvider,
   ServerRouter,
 } from "react-router";
-import { nonceContext } from "#app/auth/context.server.ts";
+import { gzipContext, nonceContext } from "#app/auth/context.server.ts";
 import { log } from "#app/services/log.server.ts";
 
 export const streamTimeout = 5_000;
@@ -21,7 +22,8 @@ export default function handleRequest(
   routerContext: EntryContext,
   loadContext: RouterContextProvider,
 ): Promise<Response> | Response {
-  keepFromCaches(headers);
+  const isZipped = loadContext.get(gzipContext);
+  prepareHeaders(headers, isZipped);
   headers.set("Content-Type", "text/html; charset=utf-8");
   if (request.method === "HEAD") return new Response(null, { status, headers });
 
@@ -37,12 +39,9 @@ export default function handleRequest(
         nonce,
         [readyOption]() {
           isShellRendered = true;
-          const body = new PassThrough({
-            final(callback) {
-              clearTimeout(timer);
-              callback();
-            },
-          });
+          // React flushes what it compresses into, so that a page arrives piece by piece all the same.
+          const body = isZipped ? createGzip() : new PassThrough();
+          body.once("close", () => clearTimeout(timer));
           pipe(body);
           resolve(new Response(createReadableStreamFromReadable(body), { status, headers }));
         },
@@ -58,9 +57,13 @@ export default function handleRequest(
   });
 }
 
-export const handleDataRequest: HandleDataRequestFunction = (response) => {
-  keepFromCaches(response.headers);
-  return response;
+export const handleDataRequest: HandleDataRequestFunction = (response, { context }) => {
+  const isZipped = context.get(gzipContext) && response.body !== null;
+  prepareHeaders(response.headers, isZipped);
+  if (!isZipped) return response;
+  const { status, statusText, headers } = response;
+  const body = response.body?.pipeThrough(new CompressionStream("gzip"));
+  return new Response(body, { status, statusText, headers });
 };
 
 export const handleError: HandleErrorFunction = (error, { request }) => {
@@ -69,7 +72,9 @@ export const handleError: HandleErrorFunction = (error, { request }) => {
   log.error({ err: error, method: request.method, path: new URL(request.url).pathname }, "Failed");
 };
 
-/** What a person of one lab saw is not shown to the next one at the same machine. */
-function keepFromCaches(headers: Headers): void {
+function prepareHeaders(headers: Headers, isZipped: boolean): void {
+  // What a person of one lab saw is not shown to the next one at the same machine.
   if (!headers.has("Cache-Control")) headers.set("Cache-Control", "private, no-store");
+  headers.append("Vary", "Accept-Encoding");
+  if (isZipped) headers.set("Content-Encoding", "gzip");
 }

@@ -7,6 +7,7 @@ import { RouterContextProvider } from "react-router";
 import {
   deskContext,
   gateContext,
+  gzipContext,
   nonceContext,
   remoteAddressContext,
 } from "#app/auth/context.server.ts";
@@ -27,8 +28,8 @@ let open: { desk: Desk; gate: Gate } | null = null;
 let resuming: NodeJS.Timeout | undefined;
 
 /**
- * Opens the database (running the migrations) and what stands around it, and takes up the background
- * work that the process before this one left.
+ * Opens the database (running the migrations) and what stands around it, and begins to take up the
+ * background work that the process before this one left.
  */
 export async function ready(): Promise<void> {
   if (env.isDemo) log.level = "warn";
@@ -41,7 +42,8 @@ export async function ready(): Promise<void> {
   open = { desk, gate };
   const resume = () =>
     resumeWork(desk).catch((error: unknown) => log.error({ err: error }, "Resuming work failed"));
-  await resume();
+  // A storage that does not answer now must not keep pages from being served.
+  void resume();
   resuming = setInterval(resume, RESUME_EVERY_MS).unref();
 }
 
@@ -65,18 +67,13 @@ app.set(
 
 app.use(logRequests());
 app.use(secureHeaders(env));
-// Text that is downloaded in bulk goes out faster as it is.
-app.use(
-  compression({
-    filter: (request, response) =>
-      !/^text\/csv/.test(String(response.getHeader("Content-Type"))) &&
-      compression.filter(request, response),
-  }),
-);
-// Built files carry a hash of their bytes in their names.
+app.use(refuseLargeBodies());
+// Built files carry a hash of their bytes in their names. Pages compress themselves as they stream
+// (entry.server.tsx): this package keeps a listener for each piece of a stream that waits.
 app.use(
   "/assets",
   assetPolicy(env),
+  compression(),
   express.static(join(CLIENT_FOLDER, "assets"), {
     immutable: true,
     maxAge: YEAR_S * 1000,
@@ -95,6 +92,7 @@ app.use(
       context.set(gateContext, open.gate);
       context.set(remoteAddressContext, request.ip ?? "unknown");
       context.set(nonceContext, response.locals.nonce);
+      context.set(gzipContext, request.acceptsEncodings("gzip") === "gzip");
       return context;
     },
   }),
@@ -166,6 +164,24 @@ function assetPolicy({ storage }: Env): RequestHandler {
   };
 }
 
+/** Forms, and a fit's windows and numbers; files go straight to the storage. */
+const MOST_FORM_BYTES = 1024 * 1024;
+const MOST_JSON_BYTES = 16 * 1024 * 1024;
+
+/** A body is read whole into memory, so its length is known and bounded before. */
+function refuseLargeBodies(): RequestHandler {
+  return (request, response, next) => {
+    const most = request.is("application/json") ? MOST_JSON_BYTES : MOST_FORM_BYTES;
+    const hasLength = request.get("Transfer-Encoding") === undefined;
+    if (hasLength && Number(request.get("Content-Length") ?? 0) <= most) return next();
+    response
+      .status(hasLength ? 413 : 411)
+      .set("Connection", "close")
+      .type("text/plain")
+      .send("This request is too large, or does not say how large it is.");
+  };
+}
+
 /**
  * What changes something must come from a page of ours. Browsers say so in Sec-Fetch-Site or, older
  * ones, in Origin; what sends neither is no browser, and holds no cookie that it did not ask for.
@@ -195,13 +211,12 @@ function sayFailure(): ErrorRequestHandler {
     if (status >= 500)
       log.error({ err: error, method: request.method, path: request.path }, "Failed");
     if (response.headersSent) return next(error);
-    response
-      .status(status)
-      .type("text/plain")
-      .send(
-        status === 404
-          ? "There is nothing at this address."
-          : "Something went wrong on our side. Load the page again; if it happens again, tell whoever runs Ogee in your lab.",
-      );
+    response.status(status).type("text/plain").send(sentenceOf(status));
   };
+}
+
+function sentenceOf(status: number): string {
+  if (status === 404) return "There is nothing at this address.";
+  if (status < 500) return "This request is not readable: load the page again.";
+  return "Something went wrong on our side. Load the page again; if it happens again, tell whoever runs Ogee in your lab.";
 }

@@ -5,7 +5,7 @@ import { join } from "node:path";
 import { pathToFileURL } from "node:url";
 import { EnvError, readEnv } from "#app/env.server.ts";
 
-/** How long answers under way may take when the server is told to stop. */
+/** How long answers under way may take when the server is told to stop, and background work after it. */
 const GRACE_MS = 10_000;
 
 process.env.NODE_ENV ??= "production";
@@ -35,6 +35,8 @@ async function main(): Promise<void> {
     if (isStopping) return;
     isStopping = true;
     setTimeout(() => server.closeAllConnections(), GRACE_MS).unref();
+    // What is unfinished by then (the storage does not answer) is taken up at the next start.
+    setTimeout(() => process.exit(1), 2 * GRACE_MS).unref();
     server.close(async () => {
       await closing();
       process.exit(0);

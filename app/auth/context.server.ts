@@ -15,5 +15,8 @@ export const remoteAddressContext = createContext<string>("unknown");
 /** Marks the scripts of this answer that the content security policy lets run. */
 export const nonceContext = createContext<string | undefined>(undefined);
 
+/** Whether this answer may go out compressed: the caller takes gzip. */
+export const gzipContext = createContext<boolean>(false);
+
 /** Who asks, once a loader or action of this request has looked; `require.server.ts` fills it. */
 export const visitorContext = createContext<Promise<Visitor | null> | null>(null);

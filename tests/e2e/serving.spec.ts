@@ -1,4 +1,5 @@
 /** What every answer of the running application carries, and what it refuses before a page is asked. */
+import { request as httpRequest } from "node:http";
 import { type APIResponse, expect, test } from "@playwright/test";
 import { demoAccount, demoAddress, signInToDemo } from "../support/demo-page.ts";
 
@@ -50,6 +51,49 @@ test("pages are kept from caches; built files stay in them for good", async ({ r
   expect(built.headers()["content-encoding"]).toBeDefined();
   // A worker's script brings its own policy, and hashing in it runs as WebAssembly.
   expect(policyOf(built).get("script-src")).toBe("'self' 'wasm-unsafe-eval'");
+});
+
+test("pages go out compressed to who takes it, and as they are to who does not", async ({
+  request,
+}) => {
+  const { email, password } = demoAccount("analyst");
+  const signedIn = await request.post(`${demoAddress()}/sign-in`, {
+    headers: { Origin: demoAddress() },
+    form: { email, password },
+    maxRedirects: 0,
+  });
+  expect(signedIn.status()).toBe(302);
+  for (const path of ["/studies", "/studies.data"]) {
+    const zipped = await request.get(demoAddress() + path);
+    expect(zipped.headers()["content-encoding"], path).toBe("gzip");
+    const plain = await request.get(demoAddress() + path, {
+      headers: { "Accept-Encoding": "identity" },
+    });
+    expect(plain.headers()["content-encoding"], path).toBeUndefined();
+    for (const answer of [zipped, plain]) {
+      expect(answer.headers().vary, path).toContain("Accept-Encoding");
+      expect(await answer.text(), path).toMatch(/Wrist/i);
+    }
+  }
+});
+
+test("a body that is too large, or does not say how large it is, is not read", async () => {
+  const send = (length: Record<string, string>, type = "application/x-www-form-urlencoded") =>
+    new Promise<number | undefined>((resolve, reject) => {
+      const headers = { "Content-Type": type, ...length };
+      const asked = httpRequest(`${demoAddress()}/preferences`, { method: "POST", headers });
+      asked.once("error", reject).once("response", (answer) => {
+        resolve(answer.statusCode);
+        asked.destroy();
+      });
+      // The head alone: the answer comes before the body.
+      asked.flushHeaders();
+    });
+  expect(await send({ "Content-Length": String(1024 * 1024 + 1) })).toBe(413);
+  expect(await send({ "Content-Length": String(16 * 1024 * 1024 + 1) }, "application/json")).toBe(
+    413,
+  );
+  expect(await send({ "Transfer-Encoding": "chunked" })).toBe(411);
 });
 
 test("the server is alive and ready", async ({ request }) => {
