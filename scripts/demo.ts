@@ -3,7 +3,7 @@
  * the invented study and serves until stopped. Everything it keeps stands in one folder.
  */
 import { type ChildProcess, spawn, spawnSync } from "node:child_process";
-import { existsSync, mkdirSync, readdirSync, statSync, writeFileSync } from "node:fs";
+import { existsSync, mkdirSync, readdirSync, readFileSync, statSync, writeFileSync } from "node:fs";
 import { join, resolve } from "node:path";
 import { startMailCatcher } from "./demo/mail-catcher.ts";
 import { findFreePort, isFree } from "./demo/ports.ts";
@@ -11,6 +11,7 @@ import { DEMO_PEOPLE, seedDemo } from "./demo/seed.ts";
 import { BUCKET, FAKE_KEYS, startStorageFake } from "./demo/storage-fake.ts";
 
 const root = join(import.meta.dirname, "..");
+const LAST_PORT = 65_535;
 
 async function main(): Promise<void> {
   const data = resolve(process.env.OGEE_DATA ?? join(root, ".data", "demo"));
@@ -19,14 +20,15 @@ async function main(): Promise<void> {
 
   const port = await choosePort();
   const address = `http://127.0.0.1:${port}`;
+  const besides = (far: number) => findFreePort(port + far <= LAST_PORT ? port + far : port - far);
   const storage = await startStorageFake({
     directory: join(data, "storage"),
-    port: await findFreePort(port + 1000),
+    port: await besides(1000),
     pageOrigin: address,
   });
   const mail = await startMailCatcher({
-    smtp: await findFreePort(port + 2000),
-    page: await findFreePort(port + 3000),
+    smtp: await besides(2000),
+    page: await besides(3000),
   });
   const env: Record<string, string> = {
     NODE_ENV: "production",
@@ -35,6 +37,9 @@ async function main(): Promise<void> {
     PUBLIC_URL: address,
     OGEE_DATA: data,
     OGEE_DEMO: "1",
+    // Whatever this shell names: the invented study goes into the demo's own folder.
+    DATABASE_URL: "",
+    DATABASE_AUTH_TOKEN: "",
     S3_ENDPOINT: storage.endpoint,
     S3_REGION: "us-east-1",
     S3_BUCKET: BUCKET,
@@ -59,31 +64,33 @@ async function main(): Promise<void> {
     await storage.stop();
     process.exit(code);
   };
-  process.on("SIGINT", () => void stop(0));
-  process.on("SIGTERM", () => void stop(0));
+  // A terminal that is closed hangs up; the server, in a group of its own, would stay.
+  for (const signal of ["SIGINT", "SIGTERM", "SIGHUP"]) process.on(signal, () => void stop(0));
 
   try {
-    await seedDemo({ ...process.env, ...env }, (line) => console.log(line));
-  } catch (error) {
-    console.error(error);
-    await stop(1);
-    return;
-  }
-  if (stopping) return;
-  // In a process group of its own: Ctrl-C reaches this parent alone, which ends it in order.
-  server = spawn(process.execPath, ["--import", "tsx", "scripts/start.ts"], {
-    cwd: root,
-    env: { ...process.env, ...env },
-    stdio: ["ignore", "inherit", "inherit"],
-    detached: true,
-  });
-  server.once("exit", (code) => {
-    if (!stopping) {
+    // Once: what a person changed in the demo since is theirs.
+    if (!isFilled(data)) {
+      await seedDemo({ ...process.env, ...env }, (line) => console.log(line));
+      markFilled(data);
+    }
+    if (stopping) return;
+    // In a process group of its own: Ctrl-C reaches this parent alone, which ends it in order.
+    server = spawn(process.execPath, ["--import", "tsx", "scripts/start.ts"], {
+      cwd: root,
+      env: { ...process.env, ...env },
+      stdio: ["ignore", "inherit", "inherit"],
+      detached: true,
+    });
+    server.once("exit", (code) => {
+      if (stopping) return;
       console.error(`The server ended by itself (exit ${code}).`);
       void stop(1);
-    }
-  });
-  await waitUntilReady(address, () => stopping);
+    });
+    await waitUntilReady(address, () => stopping);
+  } catch (error) {
+    if (!stopping) console.error(error);
+    await stop(1);
+  }
   if (stopping) return;
   for (const person of DEMO_PEOPLE) {
     console.log(`sign-in ${person.role} ${person.email} ${person.password}`);
@@ -92,9 +99,11 @@ async function main(): Promise<void> {
   console.log(`ready ${address}`);
 }
 
+const MARK = "demo.json";
+
 /** Says in the folder that it is the demo's, so that a reset knows what it may clear. */
 function markFolder(data: string): void {
-  const mark = join(data, "demo.json");
+  const mark = join(data, MARK);
   if (existsSync(mark)) return;
   if (existsSync(data) && readdirSync(data).length > 0) {
     throw new Error(
@@ -102,7 +111,20 @@ function markFolder(data: string): void {
     );
   }
   mkdirSync(data, { recursive: true });
-  writeFileSync(mark, `${JSON.stringify({ madeBy: "npm run demo" })}\n`);
+  writeMark(data, { isFilled: false });
+}
+
+/** Whether the invented study stands there whole; a start that was interrupted goes on with it. */
+function isFilled(data: string): boolean {
+  return JSON.parse(readFileSync(join(data, MARK), "utf8")).isFilled === true;
+}
+
+function markFilled(data: string): void {
+  writeMark(data, { isFilled: true });
+}
+
+function writeMark(data: string, state: { isFilled: boolean }): void {
+  writeFileSync(join(data, MARK), `${JSON.stringify({ madeBy: "npm run demo", ...state })}\n`);
 }
 
 /** PORT where it is set (and then it must be free), else 4300 or the next free one. */
@@ -110,8 +132,8 @@ async function choosePort(): Promise<number> {
   const asked = process.env.PORT;
   if (!asked) return findFreePort(4300);
   const port = Number(asked);
-  if (!Number.isInteger(port) || port < 1 || port > 65535) {
-    throw new Error(`PORT is "${asked}": give a number from 1 to 65535.`);
+  if (!Number.isInteger(port) || port < 1 || port > LAST_PORT) {
+    throw new Error(`PORT is "${asked}": give a number from 1 to ${LAST_PORT}.`);
   }
   if (!(await isFree(port))) {
     throw new Error(`Port ${port} is taken: set PORT to another, or leave it out.`);

@@ -15,14 +15,20 @@ export interface RunningDemo {
   stop(): Promise<void>;
 }
 
-/** @param folder  cleared before the start */
-export async function runDemo(folder: string): Promise<RunningDemo> {
+/**
+ * @param folder  cleared before the start
+ * @param env  settings that stand in the shell beside this one's
+ */
+export async function runDemo(
+  folder: string,
+  env: Record<string, string> = {},
+): Promise<RunningDemo> {
   rmSync(folder, { recursive: true, force: true });
   const port = await findFreePort(4310);
   const demo = spawn(process.execPath, ["--import", "tsx", "scripts/demo.ts"], {
     cwd: root,
     stdio: ["ignore", "pipe", "pipe"],
-    env: { ...process.env, OGEE_DATA: folder, PORT: String(port) },
+    env: { ...process.env, ...env, OGEE_DATA: folder, PORT: String(port) },
   });
   const ended = new Promise<void>((resolve) => demo.once("close", () => resolve()));
   let errors = "";

@@ -17,6 +17,7 @@ import {
 } from "#app/db/people.server.ts";
 import { findLatestProtocol } from "#app/db/protocols.server.ts";
 import { findRecordingByHash } from "#app/db/recordings.server.ts";
+import { findRig } from "#app/db/rigs.server.ts";
 import { findStudyByName, findStudyPlan } from "#app/db/studies.server.ts";
 import { type SavedWindow, windowsDocumentOf } from "#app/domain/fit.ts";
 import {
@@ -33,6 +34,7 @@ import { background } from "#app/workflows/background.server.ts";
 import { makeLab } from "#app/workflows/make-lab.server.ts";
 import { measureRig } from "#app/workflows/measure-rig.server.ts";
 import { openUpload } from "#app/workflows/open-upload.server.ts";
+import { resumeWork } from "#app/workflows/resume-work.server.ts";
 import { openResiduals, reviewFit } from "#app/workflows/review-fit.server.ts";
 import { createStudy } from "#app/workflows/set-up-study.server.ts";
 import { compileFor, storeFit } from "#app/workflows/store-fit.server.ts";
@@ -118,6 +120,9 @@ export async function seedDemo(
   try {
     const actors = await makePeople(desk);
     const studyId = await makeStudy(desk, actors);
+    // What an interrupted start left in the middle.
+    await resumeWork(desk);
+    await background.settled();
     await measureDemoRig(desk, actors, studyId);
     const recordings = listRecordings();
     for (const [index, recording] of recordings.entries()) {
@@ -223,6 +228,8 @@ async function makeStudy(desk: Desk, actors: Actors): Promise<string> {
 async function measureDemoRig(desk: Desk, actors: Actors, studyId: string): Promise<void> {
   const plan = await findStudyPlan(desk.store.db, actors.manager.labId, studyId);
   if (!plan?.rigId) throw new Error("The demo's study has no rig.");
+  const rig = await findRig(desk.store.db, actors.manager.labId, plan.rigId);
+  if (rig?.impedance) return;
   const { text } = compileProtocol({
     choices: CHOICES,
     map: mapFor("right"),
@@ -254,7 +261,7 @@ async function seedRecording(
   const bytes = makeRecordingFile(recording, 1000 + index);
   const sha256 = createHash("sha256").update(bytes).digest("hex");
   let row = await findRecordingByHash(db, labId, sha256);
-  if (!row) {
+  if (!row || row.state === "refused") {
     await takeIn(desk, actors.biomechanist, studyId, recording, bytes, sha256);
     row = await findRecordingByHash(db, labId, sha256);
   }

@@ -7,7 +7,9 @@ import { runDemo } from "../../scripts/demo/run-demo.ts";
 
 export default async function startDemo(): Promise<() => Promise<void>> {
   if (process.env.OGEE_TEST_ADDRESS) return async () => {};
-  const demo = await runDemo(join(import.meta.dirname, "..", "..", "test-results", "browser-data"));
+  const folder = join(import.meta.dirname, "..", "..", "test-results", "browser-data");
+  // A shell that names a real installation: the demo must not write there (it would not start).
+  const demo = await runDemo(folder, { DATABASE_URL: "libsql://installation.invalid" });
   process.env.OGEE_TEST_ADDRESS = demo.address;
   process.env.OGEE_TEST_SIGN_INS = JSON.stringify(demo.signIns);
   return demo.stop;
