@@ -1,4 +1,4 @@
-import { toSi } from "#app/engine/math/units.ts";
+import { siConversion } from "#app/engine/math/units.ts";
 import type { Unit } from "#app/engine/types.ts";
 
 export interface Calibration {
@@ -8,10 +8,13 @@ export interface Calibration {
   sign?: 1 | -1;
 }
 
-/** value = sign · (raw − offset) · gain, then unit → SI; missing samples stay missing. */
+/** value = sign · (raw − offset) · gain, then unit → SI, in place; missing samples stay missing. */
 export function calibrate(
-  raw: Float64Array,
+  values: Float64Array,
   { unit, gain = 1, offset = 0, sign = 1 }: Calibration,
-): Float64Array {
-  return raw.map((value) => toSi(sign * (value - offset) * gain, unit));
+): void {
+  const si = siConversion(unit);
+  for (let i = 0; i < values.length; i++) {
+    values[i] = si(sign * ((values[i] as number) - offset) * gain);
+  }
 }

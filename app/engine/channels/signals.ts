@@ -39,6 +39,8 @@ export function columnsOf(protocol: Protocol): string[] {
  * Missing samples are filled before calibration (only where the protocol allows it) and counted
  * before they are filled. Nothing is filtered, and the torque's lag is not applied.
  *
+ * @param table  is used up: a column that is mapped once becomes its signal in place, since an hour's
+ *   columns are not held twice
  * @throws EngineError "protocol" where a unit does not suit its field, "unreadable" where time runs
  *   backwards, is too coarse or missing, and for fewer than 30 samples
  */
@@ -51,10 +53,14 @@ export function toSignals(table: Table, protocol: Protocol): Signals {
     );
   }
   const mapped = mappedColumns(protocol);
+  const columns = columnsOf(protocol);
+  const constant = columns.filter((name) => isConstant(rawColumn(table, name)));
+  const missing = columns.reduce((sum, name) => sum + countMissing(rawColumn(table, name)), 0);
   const longest = protocol.max_filled_samples;
-  const { base, filledStamps } = timeBaseOf(table, protocol);
+  const isUsedOnce = (name: string) => mapped.filter(({ column }) => column === name).length === 1;
+  const { base, filledStamps } = timeBaseOf(table, protocol, isUsedOnce);
   const channel = (column: string, calibration: Calibration): ChannelSignal =>
-    channelOf(table, column, calibration, longest, base.segments);
+    channelOf(rawColumn(table, column), column, calibration, longest, base.segments, isUsedOnce);
 
   const axes = protocol.axes.map((axis) => axisOf(axis, channel, filledStamps));
   const emg = protocol.emg.map((entry): Signals["emg"][number] => {
@@ -72,7 +78,6 @@ export function toSignals(table: Table, protocol: Protocol): Signals {
       ? null
       : fillMissing(rawColumn(table, triggerColumn.trim()), longest, base.segments).values;
 
-  const columns = columnsOf(protocol);
   return {
     samples: table.rows,
     rateHz: base.rateHz,
@@ -83,11 +88,11 @@ export function toSignals(table: Table, protocol: Protocol): Signals {
     duplicateBefore: base.duplicateBefore,
     gaps: base.gapBefore.length,
     duplicates: base.duplicateBefore.length,
-    missing: columns.reduce((sum, name) => sum + countMissing(rawColumn(table, name)), 0),
+    missing,
     axes,
     trigger,
     emg,
-    flags: [...table.flags, ...flagsOf(table, base, columns, mapped)],
+    flags: [...table.flags, ...flagsOf(table, base, constant, mapped)],
     dialect: table.dialect,
   };
 }
@@ -120,30 +125,33 @@ function rawColumn(table: Table, name: string): Float64Array {
 function timeBaseOf(
   table: Table,
   protocol: Protocol,
+  isUsedOnce: (column: string) => boolean,
 ): { base: TimeBase; filledStamps: Uint8Array | null } {
   const { time } = protocol;
   if ("rate_hz" in time) {
     return { base: statedTimeBase(table.rows, time.rate_hz), filledStamps: null };
   }
   const column = time.column.trim();
-  const stamps = fillMissing(rawColumn(table, column), protocol.max_filled_samples);
+  const raw = rawColumn(table, column);
+  const { values, filled } = fillMissing(raw, protocol.max_filled_samples);
+  const stamps = values === raw && !isUsedOnce(column) ? raw.slice() : values;
   const lineOf = (row: number): number => lineOfRow(table, row);
-  return {
-    base: stampedTimeBase(stamps.values, time.unit, column, lineOf),
-    filledStamps: stamps.filled,
-  };
+  return { base: stampedTimeBase(stamps, time.unit, column, lineOf), filledStamps: filled };
 }
 
 function channelOf(
-  table: Table,
+  raw: Float64Array,
   column: string,
   calibration: Calibration,
   longest: number,
   segments: Segment[],
+  isUsedOnce: (column: string) => boolean,
 ): ChannelSignal {
-  const raw = rawColumn(table, column);
+  const extremes = rawExtremes(raw);
   const { values, filled } = fillMissing(raw, longest, segments);
-  return { column, si: calibrate(values, calibration), ...rawExtremes(raw), filled };
+  const si = values === raw && !isUsedOnce(column) ? raw.slice() : values;
+  calibrate(si, calibration);
+  return { column, si, ...extremes, filled };
 }
 
 function axisOf(
@@ -193,13 +201,12 @@ function eitherFilled(a: Uint8Array | null, b: Uint8Array | null): Uint8Array | 
   return a.map((value, i) => value | (b[i] as number));
 }
 
-function flagsOf(table: Table, base: TimeBase, columns: string[], mapped: MappedColumn[]): Flag[] {
+function flagsOf(table: Table, base: TimeBase, constant: string[], mapped: MappedColumn[]): Flag[] {
   const flags: Flag[] = [];
   const raise = (code: FlagCode, about?: string) => flags.push(flag(code, about));
   if (base.jitter) raise("jitter");
   if (base.gapBefore.length > 0) raise("gaps");
   if (base.duplicateBefore.length > 0) raise("duplicates");
-  const constant = columns.filter((name) => isConstant(rawColumn(table, name)));
   if (constant.length > 0) raise("constant_channel", constant.map(oneLine).join(", "));
   const mismatched = new Set(mapped.flatMap((entry) => mismatchOf(table, entry)));
   if (mismatched.size > 0) raise("unit_mismatch", [...mismatched].join(", "));

@@ -1,5 +1,5 @@
 import { EngineError, quoted } from "#app/engine/errors.ts";
-import { toSi } from "#app/engine/math/units.ts";
+import { siConversion, toSi } from "#app/engine/math/units.ts";
 import type { Segment, Unit } from "#app/engine/types.ts";
 
 export interface TimeBase {
@@ -23,7 +23,8 @@ const ROUNDING = 1e-6;
 
 /** The time base of a stated rate: the first sample at 0, no gaps. */
 export function statedTimeBase(samples: number, rateHz: number): TimeBase {
-  const timeS = Float64Array.from({ length: samples }, (_, i) => i / rateHz);
+  const timeS = new Float64Array(samples);
+  for (let i = 0; i < samples; i++) timeS[i] = i / rateHz;
   return {
     timeS,
     rateHz,
@@ -42,7 +43,7 @@ export function statedTimeBase(samples: number, rateHz: number): TimeBase {
  * medians) and duplicates (0); the rate is the reciprocal of the MEAN of the regular steps, so that
  * stamps rounded to a coarse unit still give the true rate.
  *
- * @param stamps  raw stamps, NaN where missing
+ * @param stamps  raw stamps, NaN where missing; they become `timeS` in place
  * @param lineOf  physical line of a row, for refusals
  * @throws EngineError "unreadable" where time runs backwards, hardly moves or is missing
  */
@@ -124,12 +125,14 @@ export function stampedTimeBase(
       `No two steps of the stamps in column ${quoted(column)} are alike; map another column or state the sampling rate (rate_hz).`,
     );
   }
-  const timeS = stamps.map((stamp) => toSi(stamp, unit));
+  const durationS = toSi((stamps[last] as number) - (stamps[first] as number), unit);
+  const si = siConversion(unit);
+  for (let i = 0; i < samples; i++) stamps[i] = si(stamps[i] as number);
   return {
-    timeS,
+    timeS: stamps,
     // The unit first: 5 791 steps in 5 791 ms are then 1 000 Hz to the last bit.
     rateHz: regular / toSi(1, unit) / sum,
-    durationS: toSi((stamps[last] as number) - (stamps[first] as number), unit),
+    durationS,
     segments,
     gapBefore,
     duplicateBefore,

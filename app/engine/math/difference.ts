@@ -1,13 +1,22 @@
+/** Samples at each end without a derivative. */
+const UNVALUED = 2;
+
 /**
  * First derivative by the five-point central difference,
  * (x₋₂ − 8 x₋₁ + 8 x₊₁ − x₊₂) / 12h; error of order h⁴ (Abramowitz & Stegun 1964, 25.3.6 ff.).
  *
- * @returns a new array as long as `x`; NaN at the two samples at each end
+ * @param y  where the result goes, as long as `x`; a new array if left out
+ * @returns `y`; NaN at the two samples at each end
  */
-export function fivePointFirst(x: Float64Array, stepS: number): Float64Array {
+export function fivePointFirst(
+  x: Float64Array,
+  stepS: number,
+  y: Float64Array = new Float64Array(x.length),
+): Float64Array {
   const n = x.length;
-  const y = new Float64Array(n).fill(Number.NaN);
-  for (let i = 2; i < n - 2; i++) {
+  y.fill(Number.NaN, 0, UNVALUED);
+  y.fill(Number.NaN, Math.max(0, n - UNVALUED));
+  for (let i = UNVALUED; i < n - UNVALUED; i++) {
     const inner = (x[i + 1] as number) - (x[i - 1] as number);
     const outer = (x[i + 2] as number) - (x[i - 2] as number);
     y[i] = (8 * inner - outer) / (12 * stepS);
@@ -19,12 +28,18 @@ export function fivePointFirst(x: Float64Array, stepS: number): Float64Array {
  * Second derivative by the five-point central difference,
  * (−x₋₂ + 16 x₋₁ − 30 x₀ + 16 x₊₁ − x₊₂) / 12h²; error of order h⁴.
  *
- * @returns a new array as long as `x`; NaN at the two samples at each end
+ * @param y  where the result goes, as long as `x`; a new array if left out
+ * @returns `y`; NaN at the two samples at each end
  */
-export function fivePointSecond(x: Float64Array, stepS: number): Float64Array {
+export function fivePointSecond(
+  x: Float64Array,
+  stepS: number,
+  y: Float64Array = new Float64Array(x.length),
+): Float64Array {
   const n = x.length;
-  const y = new Float64Array(n).fill(Number.NaN);
-  for (let i = 2; i < n - 2; i++) {
+  y.fill(Number.NaN, 0, UNVALUED);
+  y.fill(Number.NaN, Math.max(0, n - UNVALUED));
+  for (let i = UNVALUED; i < n - UNVALUED; i++) {
     const middle = x[i] as number;
     // Differences to the middle first: an offset then costs no digits.
     const inner = (x[i - 1] as number) - middle + ((x[i + 1] as number) - middle);

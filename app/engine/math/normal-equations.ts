@@ -47,26 +47,6 @@ export function normalEquations(
   return equations;
 }
 
-/** Adds `other` to `sum` in place. */
-export function addNormalEquations(sum: NormalEquations, other: NormalEquations): void {
-  for (let i = 0; i < sum.gram.length; i++) {
-    sum.gram[i] = (sum.gram[i] as number) + (other.gram[i] as number);
-  }
-  for (let i = 0; i < sum.moment.length; i++) {
-    sum.moment[i] = (sum.moment[i] as number) + (other.moment[i] as number);
-  }
-  sum.square += other.square;
-  sum.rows += other.rows;
-}
-
-/** Sets all to 0 in place, so that one object serves all resamples. */
-export function clearNormalEquations(equations: NormalEquations): void {
-  equations.gram.fill(0);
-  equations.moment.fill(0);
-  equations.square = 0;
-  equations.rows = 0;
-}
-
 /**
  * Solves (XᵀX) b = Xᵀy by Cholesky with the columns scaled to unit 2-norm.
  *

@@ -54,8 +54,13 @@ export function unitsOf(dimension: Dimension): Unit[] {
 
 /** A value in `unit` → SI (rad, N·m, s, V, N, m, Pa, 1). */
 export function toSi(value: number, unit: Unit): number {
+  return siConversion(unit)(value);
+}
+
+/** {@link toSi} for many values of one unit. */
+export function siConversion(unit: Unit): (value: number) => number {
   const { times, over } = FACTS[unit];
-  return over === 1 ? value * times : value / over;
+  return over === 1 ? (value) => value * times : (value) => value / over;
 }
 
 /** Ways in which laboratories write the units above, in small letters and without blanks. */

@@ -98,7 +98,10 @@ export function scanRows(
   const reached = scanWholeLines(bytes, layout.dataOffset, end, layout, slots, progress, false);
   if (reached < bytes.length) scanLastRow(bytes.subarray(reached), layout, slots, progress);
   const { rows, firstDataLine, skippedLines, truncated } = progress;
-  const columns = progress.columns.map((column) => column.slice(0, rows));
+  // A little room is left behind the last row: less than a copy costs.
+  const columns = progress.columns.map((column) =>
+    8 * rows > 7 * column.length ? column.subarray(0, rows) : column.slice(0, rows),
+  );
   return { rows, columns, firstDataLine, skippedLines, truncated };
 }
 

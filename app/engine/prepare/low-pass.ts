@@ -24,12 +24,10 @@ export function lowPass(
     const n = end - start;
     if (n < SHORTEST_SEGMENT_SAMPLES) continue;
     const part = x.subarray(start, end);
-    y.set(
-      filter && sections
-        ? filterZeroPhase(sections, part, padSamples(rateHz, filter.cutoffHz, n))
-        : part,
-      start,
-    );
+    const out = y.subarray(start, end);
+    if (filter && sections) {
+      filterZeroPhase(sections, part, padSamples(rateHz, filter.cutoffHz, n), out);
+    } else out.set(part);
   }
   return y;
 }

@@ -40,8 +40,8 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
   const condition = (x: Float64Array) => {
     const filtered = lowPass(x, segments, rateHz, filter);
     if (smoothing === null) return filtered;
-    return bySegment(filtered, segments, (part) =>
-      savitzkyGolaySmooth(part, smoothing.spanSamples, smoothing.polynomial),
+    return bySegment(filtered, segments, (part, out) =>
+      out.set(savitzkyGolaySmooth(part, smoothing.spanSamples, smoothing.polynomial)),
     );
   };
   const fitsLimb = fitsLimbAngle(protocol, axis.name);
@@ -51,12 +51,13 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
     cutoffHz: Math.min(protocol.onset.cutoff_hz, 0.2 * rateHz),
   });
   const stepS = 1 / rateHz;
-  const first = (part: Float64Array) => fivePointFirst(part, stepS);
+  const first = (part: Float64Array, out: Float64Array) => fivePointFirst(part, stepS, out);
+  const second = (part: Float64Array, out: Float64Array) => fivePointSecond(part, stepS, out);
   return {
     name: axis.name,
     angleRad,
     velocityRadPerS: bySegment(angleRad, segments, first),
-    accelerationRadPerS2: bySegment(angleRad, segments, (part) => fivePointSecond(part, stepS)),
+    accelerationRadPerS2: bySegment(angleRad, segments, second),
     torqueNm: condition(torqueNm),
     onsetAngleRad,
     onsetVelocityRadPerS: bySegment(onsetAngleRad, segments, first),
@@ -84,14 +85,14 @@ function hasAll(columns: readonly Float64Array[], i: number): boolean {
   return true;
 }
 
-/** Applies `change` to each segment on its own; NaN outside. */
+/** A new array to which `change` writes each segment on its own; NaN outside. */
 function bySegment(
   x: Float64Array,
   segments: readonly Segment[],
-  change: (part: Float64Array) => Float64Array,
+  change: (part: Float64Array, out: Float64Array) => void,
 ): Float64Array {
   const y = new Float64Array(x.length).fill(Number.NaN);
-  for (const { start, end } of segments) y.set(change(x.subarray(start, end)), start);
+  for (const { start, end } of segments) change(x.subarray(start, end), y.subarray(start, end));
   return y;
 }
 
