@@ -10,6 +10,7 @@ import { notFound } from "#app/domain/refusal.ts";
 import type { Impedance, Result, ResultPooled, WindowChoice } from "#app/engine/types.ts";
 import type { Reader, Transaction } from "./client.server.ts";
 import {
+  inStudyOrder,
   placeColumns,
   type RecordingPlace,
   type RecordingRow,
@@ -28,9 +29,9 @@ import {
   recordings,
   rigs,
   studies,
-  studyAxes,
   visits,
 } from "./schema.ts";
+import { listStudyAxes } from "./studies.server.ts";
 
 export type FitRow = typeof fits.$inferSelect;
 export type FitWindowRow = typeof fitWindows.$inferSelect;
@@ -324,16 +325,7 @@ export async function findRecordingContext(
     .innerJoin(rigs, eq(rigs.id, visits.rigId))
     .where(and(eq(recordings.id, recordingId), eq(recordings.labId, labId)));
   if (!row) return null;
-  const axes = await db
-    .select({
-      name: studyAxes.name,
-      label: studyAxes.label,
-      positive: studyAxes.positive,
-      negative: studyAxes.negative,
-    })
-    .from(studyAxes)
-    .where(eq(studyAxes.studyId, row.study.id))
-    .orderBy(asc(studyAxes.position));
+  const axes = await listStudyAxes(db, row.study.id);
   const { recording } = row;
   return {
     recording: {
@@ -356,7 +348,7 @@ export async function findRecordingContext(
     condition: row.condition,
     posture: row.posture,
     visit: { ...row.visit, geometry: JSON.parse(row.visit.geometry) as VisitGeometry },
-    axes,
+    axes: axes.map(({ name, label, positive, negative }) => ({ name, label, positive, negative })),
     rig: {
       ...row.rig,
       impedance:
@@ -481,14 +473,7 @@ export async function listCurrentFits(
     .innerJoin(protocols, eq(protocols.id, fits.protocolId))
     .innerJoin(people, eq(people.id, fits.savedBy))
     .where(and(eq(fits.labId, labId), eq(recordings.studyId, studyId), isNull(fits.supersededAt)))
-    .orderBy(
-      asc(participants.code),
-      asc(conditions.position),
-      asc(postures.position),
-      asc(visits.day),
-      asc(recordings.takenInAt),
-      asc(recordings.fileName),
-    );
+    .orderBy(...inStudyOrder);
   return rows.map(({ place, summary, ...rest }) => ({ ...place, ...summary, ...rest }));
 }
 

@@ -1,17 +1,8 @@
 import { and, desc, eq, inArray } from "drizzle-orm";
 import { HAPPENING_KINDS, type Happening, type HappeningKind } from "#app/domain/happening.ts";
 import type { Reader } from "./client.server.ts";
-import { placeColumns } from "./recordings.server.ts";
-import {
-  conditions,
-  events,
-  participants,
-  people,
-  postures,
-  recordings,
-  studies,
-  visits,
-} from "./schema.ts";
+import { listRecordingPlaces } from "./recordings.server.ts";
+import { events, people, studies } from "./schema.ts";
 
 /** Events that a page looks back over. */
 const LOOK_BACK = 200;
@@ -34,14 +25,12 @@ export async function listHappenings(db: Reader, labId: string): Promise<Happeni
     .limit(LOOK_BACK);
 
   const told = rows.map((row) => ({ ...row, ...objectsOf(row.kind, row.objectId, row.detail) }));
-  const [places, named] = await Promise.all([
-    listPlaces(
-      db,
-      labId,
-      told.flatMap((row) => row.recordingId ?? []),
-    ),
+  const recordingIds = new Set(told.flatMap((row) => row.recordingId ?? []));
+  const [found, named] = await Promise.all([
+    listRecordingPlaces(db, labId, [...recordingIds]),
     db.select({ id: studies.id, name: studies.name }).from(studies).where(eq(studies.labId, labId)),
   ]);
+  const places = new Map(found.map((place) => [place.recordingId, place]));
   return told.flatMap((row) => {
     const kind = HAPPENING_KINDS.find((one) => one === row.kind);
     const place = row.recordingId === null ? undefined : places.get(row.recordingId);
@@ -84,17 +73,4 @@ function hrefOf(kind: HappeningKind, objectId: string, studyId: string): string 
   if (kind.startsWith("fit.")) return `/fits/${objectId}`;
   if (kind.startsWith("recording.")) return `/recordings/${objectId}`;
   return kind === "protocol.added" ? `/studies/${studyId}/protocols` : `/studies/${studyId}`;
-}
-
-async function listPlaces(db: Reader, labId: string, recordingIds: readonly string[]) {
-  const rows = await db
-    .select(placeColumns)
-    .from(recordings)
-    .innerJoin(studies, eq(studies.id, recordings.studyId))
-    .innerJoin(participants, eq(participants.id, recordings.participantId))
-    .innerJoin(conditions, eq(conditions.id, recordings.conditionId))
-    .innerJoin(postures, eq(postures.id, recordings.postureId))
-    .innerJoin(visits, eq(visits.id, recordings.visitId))
-    .where(and(eq(recordings.labId, labId), inArray(recordings.id, [...new Set(recordingIds)])));
-  return new Map(rows.map((row) => [row.recordingId, row]));
 }

@@ -1,4 +1,4 @@
-import { and, asc, eq, isNull, sql } from "drizzle-orm";
+import { and, asc, eq, inArray, isNull, sql } from "drizzle-orm";
 import type { FitState, Verification } from "#app/domain/fit.ts";
 import {
   type RecordingFacts,
@@ -100,13 +100,6 @@ export function listVerifyingRecordings(db: Reader): Promise<RecordingRow[]> {
     .orderBy(asc(recordings.takenInAt));
 }
 
-export async function countRecordingsOfParticipant(
-  db: Reader,
-  participantId: string,
-): Promise<number> {
-  return db.$count(recordings, eq(recordings.participantId, participantId));
-}
-
 /** The visit of this participant on this rig on this day; made where there is none. */
 export async function ensureVisit(
   tx: Transaction,
@@ -168,7 +161,17 @@ export async function findRecordingPlace(
   labId: string,
   recordingId: string,
 ): Promise<RecordingPlace | null> {
-  const [row] = await db
+  const [place] = await listRecordingPlaces(db, labId, [recordingId]);
+  return place ?? null;
+}
+
+/** Those of these recordings that are the lab's, in no order. */
+export function listRecordingPlaces(
+  db: Reader,
+  labId: string,
+  recordingIds: readonly string[],
+): Promise<RecordingPlace[]> {
+  return db
     .select(placeColumns)
     .from(recordings)
     .innerJoin(studies, eq(studies.id, recordings.studyId))
@@ -176,9 +179,18 @@ export async function findRecordingPlace(
     .innerJoin(conditions, eq(conditions.id, recordings.conditionId))
     .innerJoin(postures, eq(postures.id, recordings.postureId))
     .innerJoin(visits, eq(visits.id, recordings.visitId))
-    .where(and(eq(recordings.id, recordingId), eq(recordings.labId, labId)));
-  return row ?? null;
+    .where(and(eq(recordings.labId, labId), inArray(recordings.id, [...recordingIds])));
 }
+
+/** By participant, condition, posture and day, as a study lists its recordings. */
+export const inStudyOrder = [
+  asc(participants.code),
+  asc(conditions.position),
+  asc(postures.position),
+  asc(visits.day),
+  asc(recordings.takenInAt),
+  asc(recordings.fileName),
+];
 
 export interface ListedRecording extends RecordingPlace {
   state: RecordingState;
@@ -227,14 +239,7 @@ export async function listRecordings(
     .innerJoin(people, eq(people.id, recordings.takenInBy))
     .leftJoin(fits, and(eq(fits.recordingId, recordings.id), isNull(fits.supersededAt)))
     .where(and(eq(recordings.labId, labId), eq(recordings.studyId, studyId)))
-    .orderBy(
-      asc(participants.code),
-      asc(conditions.position),
-      asc(postures.position),
-      asc(visits.day),
-      asc(recordings.takenInAt),
-      asc(recordings.fileName),
-    );
+    .orderBy(...inStudyOrder);
   return rows.map(({ place, channelMap, facts, ...rest }) => ({
     ...place,
     ...rest,
