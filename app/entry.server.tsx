@@ -47,8 +47,9 @@ export default function handleRequest(
         },
         onShellError: reject,
         onError(error) {
-          // An error before the shell stands is thrown, and logged where it arrives.
-          if (isShellRendered) log.error({ err: error }, "A page broke off");
+          // An error before the shell stands is thrown, and logged where it arrives; of who left
+          // before the end there is nothing to say.
+          if (isShellRendered && !request.signal.aborted) log.error({ err: error }, "A page broke off");
         },
       },
     );
