@@ -49,7 +49,8 @@ export default function handleRequest(
         onError(error) {
           // An error before the shell stands is thrown, and logged where it arrives; of who left
           // before the end there is nothing to say.
-          if (isShellRendered && !request.signal.aborted) log.error({ err: error }, "A page broke off");
+          if (isShellRendered && !request.signal.aborted)
+            log.error({ err: error }, "A page broke off");
         },
       },
     );
