@@ -4,8 +4,9 @@ import { findRig, updateRigImpedance } from "#app/db/rigs.server.ts";
 import { canonicalJson } from "#app/domain/canonical-json.ts";
 import { notFound } from "#app/domain/refusal.ts";
 import type { Actor } from "#app/domain/role.ts";
+import { EngineError } from "#app/engine/errors.ts";
 import { analyze, readRecording } from "#app/engine/pipeline.ts";
-import type { Protocol, ResultRig } from "#app/engine/types.ts";
+import type { Protocol, ResultRig, Signals } from "#app/engine/types.ts";
 import type { Desk } from "./desk.server.ts";
 import { requireAbility } from "./permission.server.ts";
 
@@ -24,11 +25,15 @@ export async function measureRig(
   requireAbility(actor, "manage_lab");
   if (!(await findRig(desk.store.db, actor.labId, input.rigId))) throw notFound();
   const sha256 = createHash("sha256").update(input.bytes).digest("hex");
-  const empty = {
-    file: input.fileName,
-    sha256,
-    signals: readRecording(input.bytes, input.protocol),
-  };
+  let signals: Signals;
+  try {
+    signals = readRecording(input.bytes, input.protocol);
+  } catch (error) {
+    if (!(error instanceof EngineError)) throw error;
+    const at = error.line === null ? "" : `, line ${error.line}`;
+    return { status: "refused", sentence: `${input.fileName}${at}: ${error.message}` };
+  }
+  const empty = { file: input.fileName, sha256, signals };
   const { rig } = analyze({
     protocol: input.protocol,
     protocolSha256: "",

@@ -37,7 +37,7 @@ afterAll(() => background.close());
 // Light and soft, as a handle without a limb.
 const bytes = recordingBytes({ K: 0.2, B: 0.01, I: 0.001 });
 
-function measure(actor: Actor = lab.actor("manager")) {
+function measure(actor: Actor = lab.actor("manager"), file = bytes) {
   const { protocol } = compileProtocol({
     choices: defaultChoices,
     map,
@@ -45,7 +45,7 @@ function measure(actor: Actor = lab.actor("manager")) {
     geometry: {},
     rig: null,
   });
-  return measureRig(lab.desk, actor, { rigId, fileName: "empty.csv", bytes, protocol });
+  return measureRig(lab.desk, actor, { rigId, fileName: "empty.csv", bytes: file, protocol });
 }
 
 describe("measuring a rig without a limb", () => {
@@ -72,6 +72,16 @@ describe("measuring a rig without a limb", () => {
     const taken = await takeIn(lab, study, { bytes, map: wrong });
     expect((await settleSoon(lab.desk, lab.actor("biomechanist"), taken)).status).toBe("refused");
     expect([...lab.desk.storage.objects.keys()]).toEqual(before);
+  });
+
+  it("says what is wrong with a file that cannot be read, and keeps nothing of it", async () => {
+    const text = new TextDecoder().decode(bytes).split("\n");
+    text[9] = "16,x,0";
+    const bad = new TextEncoder().encode(text.join("\n"));
+    const refused = await measure(lab.actor("manager"), bad);
+    if (refused.status !== "refused") throw new Error(refused.status);
+    expect(refused.sentence).toMatch(/^empty\.csv, line 10: /);
+    expect(lab.desk.storage.objects.size).toBe(0);
   });
 
   it("is for the manager of the rig's lab", async () => {
