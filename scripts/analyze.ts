@@ -8,6 +8,7 @@
  * 2: bad usage, protocol or windows; 3: a recording cannot be read. Where the exit is not 0 the last
  * line of standard error says why: `analyze: NAME: sentence`.
  */
+import { constants } from "node:buffer";
 import { createHash } from "node:crypto";
 import {
   closeSync,
@@ -28,10 +29,13 @@ import { EngineError } from "#app/engine/errors.ts";
 import type { RecordingInput } from "#app/engine/pipeline.ts";
 import type { Protocol, Result, WindowsDocument } from "#app/engine/types.ts";
 
-/** Larger recordings are refused before they are read: they would not fit into 1 GB on the way. */
-const MAX_RECORDING_BYTES = 256 * 1024 * 1024;
+const MIB = 1024 * 1024;
 /** More than a protocol or a list of windows may have; its reader says so. */
-const MAX_DOCUMENT_BYTES = 1024 * 1024 + 1;
+const MAX_DOCUMENT_BYTES = MIB + 1;
+/** What comes through a pipe may have no end. */
+const MAX_PIPED_BYTES = 256 * MIB;
+/** Most that is read, or hashed, by one call. */
+const PART_BYTES = 64 * MIB;
 const STANDARD_INPUT = "-";
 
 /** Why nothing is analysed: exit, what is to blame, and a sentence. */
@@ -124,45 +128,73 @@ function readArguments(given: readonly string[]): Arguments {
 
 // ---------------------------------------------------------------- reading
 
-/** The bytes of a file or of standard input. @throws Refusal, naming the file as given */
-function readBytes(file: string, exit: 2 | 3, maxBytes: number): Uint8Array {
-  const tooLarge = () =>
-    new Refusal(
-      exit,
-      file,
-      `The file is larger than ${Math.floor(maxBytes / 1024 / 1024)} MiB; it is not read.`,
-    );
+/**
+ * The bytes of a file or of standard input.
+ *
+ * @param maxBytes  of a file, and of what is piped
+ * @param start  is shown the first bytes where there are more than so many, before the rest is read
+ * @throws Refusal, naming the file as given
+ */
+function readBytes(
+  file: string,
+  exit: 2 | 3,
+  maxBytes: { file: number; pipe: number },
+  start: { bytes: number; check: (part: Uint8Array) => void } | null = null,
+): Uint8Array {
   let descriptor: number | null = null;
   try {
     descriptor = file === STANDARD_INPUT ? 0 : openSync(file, "r");
     const facts = fstatSync(descriptor);
     if (facts.isDirectory()) throw new Refusal(exit, file, "This is a folder, not a file.");
-    if (facts.isFile() && facts.size > maxBytes) throw tooLarge();
+    const most = facts.isFile() ? maxBytes.file : maxBytes.pipe;
+    if (facts.size > most) throw tooLarge(file, exit, most);
     const chunks: Buffer[] = [];
     let total = 0;
-    while (true) {
-      const chunk = Buffer.allocUnsafeSlow(facts.isFile() ? facts.size - total + 1 : 1024 * 1024);
-      const length = readPart(descriptor, chunk);
-      if (length === 0) break;
-      total += length;
-      if (total > maxBytes) throw tooLarge();
+    for (;;) {
+      // One byte more than the file has: it is full only where the file has grown meanwhile.
+      const chunk = Buffer.allocUnsafeSlow(
+        Math.max(total === 0 ? facts.size + 1 : MIB, start?.bytes ?? MIB),
+      );
+      let length = 0;
+      while (length < chunk.length) {
+        const toStart = start !== null && total === 0 && length < start.bytes;
+        const wanted = (toStart ? start.bytes : chunk.length) - length;
+        const part = readPart(descriptor, chunk, length, Math.min(wanted, PART_BYTES));
+        if (part === 0) break;
+        length += part;
+        if (total + length > most) throw tooLarge(file, exit, most);
+        if (toStart && length === start.bytes) start.check(chunk.subarray(0, length));
+      }
       chunks.push(chunk.subarray(0, length));
+      total += length;
+      if (length < chunk.length) break;
     }
     const [only] = chunks;
     return chunks.length === 1 && only !== undefined ? only : Buffer.concat(chunks, total);
   } catch (error) {
-    if (error instanceof Refusal) throw error;
+    if (error instanceof Refusal || error instanceof EngineError) throw error;
     throw new Refusal(exit, file, fileSentence(error));
   } finally {
     if (descriptor !== null && descriptor !== 0) closeSync(descriptor);
   }
 }
 
+function tooLarge(file: string, exit: 2 | 3, maxBytes: number): Refusal {
+  const size = `${Math.floor(maxBytes / MIB)} MiB`;
+  return new Refusal(
+    exit,
+    file,
+    maxBytes === MAX_PIPED_BYTES
+      ? `More than ${size} came through the pipe; give the recording as a file.`
+      : `The file is larger than ${size}, the most that can be read; it is not read.`,
+  );
+}
+
 /** One read; a terminal or pipe that has nothing yet is asked again, a closed one is at its end. */
-function readPart(descriptor: number, chunk: Buffer): number {
+function readPart(descriptor: number, chunk: Buffer, offset: number, length: number): number {
   while (true) {
     try {
-      return readSync(descriptor, chunk, 0, chunk.length, null);
+      return readSync(descriptor, chunk, offset, length, null);
     } catch (error) {
       if (codeOf(error) === "EOF") return 0;
       if (codeOf(error) !== "EAGAIN") throw error;
@@ -188,12 +220,13 @@ const FILE_SENTENCES: Record<string, string> = {
 };
 
 function fileSentence(error: unknown): string {
+  if (isOutOfMemory(error)) return NO_MEMORY;
   const code = codeOf(error);
   return FILE_SENTENCES[code ?? ""] ?? `The file cannot be used (${code ?? String(error)}).`;
 }
 
 function readText(file: string): { text: string; sha256: string } {
-  const bytes = readBytes(file, 2, MAX_DOCUMENT_BYTES);
+  const bytes = readBytes(file, 2, { file: MAX_DOCUMENT_BYTES, pipe: MAX_DOCUMENT_BYTES });
   try {
     return { text: new TextDecoder("utf-8", { fatal: true }).decode(bytes), sha256: sha256(bytes) };
   } catch {
@@ -202,7 +235,11 @@ function readText(file: string): { text: string; sha256: string } {
 }
 
 function sha256(bytes: Uint8Array): string {
-  return createHash("sha256").update(bytes).digest("hex");
+  const hash = createHash("sha256");
+  for (let at = 0; at < bytes.length; at += PART_BYTES) {
+    hash.update(bytes.subarray(at, at + PART_BYTES));
+  }
+  return hash.digest("hex");
 }
 
 function readProtocolFile(file: string): { protocol: Protocol; sha256: string } {
@@ -215,16 +252,10 @@ function readProtocolFile(file: string): { protocol: Protocol; sha256: string } 
   }
 }
 
-function readWindowsFile(file: string, protocol: Protocol): WindowsDocument {
+function readWindowsFile(file: string): WindowsDocument {
   const { text } = readText(file);
   try {
-    const document = parseWindows(text);
-    const axes = protocol.axes.map((axis) => axis.name);
-    const foreign = document.windows.findIndex((window) => !axes.includes(window.axis));
-    if (foreign >= 0) {
-      throw new WindowsError(`windows.${foreign}.axis: The protocol has no axis of this name.`);
-    }
-    return document;
+    return parseWindows(text);
   } catch (error) {
     if (!(error instanceof WindowsError)) throw error;
     throw new Refusal(2, atLine(file, error.line), error.message);
@@ -244,19 +275,24 @@ function readRecordings(
   protocol: Protocol,
   seen: Map<string, string>,
 ): RecordingInput[] {
+  const maxBytes = { file: constants.MAX_LENGTH - 1, pipe: MAX_PIPED_BYTES };
+  const start = {
+    bytes: engine.FIRST_PART_BYTES,
+    check: (part: Uint8Array) => engine.checkStart(part, protocol),
+  };
   return files.map((file) => {
-    const bytes = readBytes(file, 3, MAX_RECORDING_BYTES);
-    const hash = sha256(bytes);
-    const twin = seen.get(hash);
-    if (twin !== undefined) {
-      throw new Refusal(
-        2,
-        file,
-        `This is the same file as ${oneLine(twin)}; it would count twice.`,
-      );
-    }
-    seen.set(hash, file);
     try {
+      const bytes = readBytes(file, 3, maxBytes, start);
+      const hash = sha256(bytes);
+      const twin = seen.get(hash);
+      if (twin !== undefined) {
+        throw new Refusal(
+          2,
+          file,
+          `This is the same file as ${oneLine(twin)}; it would count twice.`,
+        );
+      }
+      seen.set(hash, file);
       return { file, sha256: hash, signals: engine.readRecording(bytes, protocol) };
     } catch (error) {
       throw refusalOf(error, file);
@@ -271,11 +307,14 @@ function refusalOf(error: unknown, file: string): unknown {
       ? new Refusal(2, error.field ?? file, error.message)
       : new Refusal(3, atLine(file, error.line), error.message);
   }
-  // The one thing that JavaScript throws for a recording that is too large for its arrays.
-  if (error instanceof RangeError && /array|allocation|string length/i.test(error.message)) {
-    return new Refusal(3, file, "The recording does not fit into memory.");
-  }
-  return error;
+  return isOutOfMemory(error) ? new Refusal(3, file, NO_MEMORY) : error;
+}
+
+const NO_MEMORY = "The recording does not fit into memory.";
+
+/** What JavaScript throws where an array or a text cannot be made. */
+function isOutOfMemory(error: unknown): boolean {
+  return error instanceof RangeError && /array|allocation|string length/i.test(error.message);
 }
 
 // ---------------------------------------------------------------- writing
@@ -309,25 +348,28 @@ function checkOut(out: string, inputs: readonly string[]): void {
 
 /** Writes FILE in one step: whoever looks sees the old one, none, or the whole of the new one. */
 function writeOut(out: string, text: string): void {
-  const isDevice = statSync(out, { throwIfNoEntry: false })?.isFile() === false;
-  const part = `${out}.${process.pid}.part`;
+  const facts = statSync(out, { throwIfNoEntry: false });
+  // A link stays one: what it points to is replaced.
+  const place = facts?.isFile() === true ? realpathSync(out) : out;
+  const part = `${place}.${process.pid}.part`;
   try {
-    if (isDevice) {
+    if (facts?.isFile() === false) {
       writeFileSync(out, text);
       return;
     }
     writeFileSync(part, text, { flag: "wx" });
-    renameSync(part, out);
+    renameSync(part, place);
   } catch (error) {
     rmSync(part, { force: true });
     throw new Refusal(2, out, fileSentence(error));
   }
 }
 
-/** Refuses windows of other recordings only, and two that begin at the same sample. */
+/** Refuses windows of other recordings only, of an axis that is not there, and two that begin at the same sample. */
 async function checkWindows(
   file: string,
   { windows }: WindowsDocument,
+  protocol: Protocol,
   recordings: readonly RecordingInput[],
 ): Promise<void> {
   const { nearestSample } = await import("#app/engine/windows/nearest-sample.ts");
@@ -337,6 +379,10 @@ async function checkWindows(
     const recording = recordings.find(({ sha256 }) => sha256 === recording_sha256);
     if (recording === undefined) continue;
     named += 1;
+    if (!protocol.axes.some(({ name }) => name === axis)) {
+      const sentence = `windows.${index}.axis: The protocol has no axis of this name.`;
+      throw new Refusal(2, file, sentence);
+    }
     const key = `${recording_sha256} ${nearestSample(recording.signals.timeS, onset_s)} ${axis}`;
     if (seen.has(key)) {
       throw new Refusal(
@@ -358,7 +404,7 @@ async function analyzeFiles(
 ): Promise<{ result: Result; out: string | null }> {
   const files = readArguments(given);
   const { protocol, sha256: protocolSha256 } = readProtocolFile(files.protocol);
-  const windows = files.windows === null ? null : readWindowsFile(files.windows, protocol);
+  const windows = files.windows === null ? null : readWindowsFile(files.windows);
   if (files.out !== null) {
     const documents = [files.protocol, ...(files.windows === null ? [] : [files.windows])];
     checkOut(files.out, [...files.recordings, ...files.rig, ...documents]);
@@ -370,7 +416,7 @@ async function analyzeFiles(
   const recordings = readRecordings(engine, files.recordings, protocol, seen);
   const rig = readRecordings(engine, files.rig, protocol, seen);
   if (files.windows !== null && windows !== null) {
-    await checkWindows(files.windows, windows, recordings);
+    await checkWindows(files.windows, windows, protocol, [...recordings, ...rig]);
   }
   try {
     const result = engine.analyze({ protocol, protocolSha256, recordings, rig, windows });

@@ -189,6 +189,7 @@ describe("a protocol", () => {
     ["axes.0.fit_angle", "joint", "axes.0.fit_angle", /rig or limb/],
     ["axes.0.positive", "negative", "axes.0.negative", /different names/],
     ["emg", [{ muscle: "m", column: "e", unit: "V", reference: 0 }], "emg.0.reference", /over 0/],
+    ["emg", [{ muscle: "m", column: "e", unit: "V", gain: 2 }], "emg.0.gain", /not a key/],
     // unknown keys and keys of other kinds
     ["filtre", {}, "filtre", /spelling/],
     ["axes.0.angle.units", "deg", "axes.0.angle.units", /spelling/],

@@ -115,9 +115,6 @@ const emg = z.strictObject({
   muscle: word,
   column,
   unit: unitOf(EMG_UNITS, "EMG"),
-  gain: gain.optional(),
-  offset: z.number().optional(),
-  sign: sign.optional(),
   reference: z.number().positive().optional(),
 });
 

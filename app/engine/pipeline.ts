@@ -2,7 +2,7 @@ import { checkDimensions } from "#app/engine/channels/dimensions.ts";
 import { columnsOf, toSignals } from "#app/engine/channels/signals.ts";
 import { EngineError, flag } from "#app/engine/errors.ts";
 import { impedanceModel, SAMPLES_PER_TERM } from "#app/engine/fit/fit-model.ts";
-import { readTable } from "#app/engine/parse/read-table.ts";
+import { checkFirstPart, readTable } from "#app/engine/parse/read-table.ts";
 import type { Analysed } from "#app/engine/pipeline-pool.ts";
 import { poolAll, poolingOf } from "#app/engine/pipeline-pool.ts";
 import type { AxisRig } from "#app/engine/pipeline-rig.ts";
@@ -41,10 +41,22 @@ export type { FirstMovement } from "#app/engine/channels/first-movement.ts";
 export { firstMovement } from "#app/engine/channels/first-movement.ts";
 export { proposeChannels } from "#app/engine/channels/propose.ts";
 export { previewTable } from "#app/engine/parse/preview.ts";
+export { FIRST_PART_BYTES } from "#app/engine/parse/read-table.ts";
 export type { RecordingInput } from "#app/engine/pipeline-window.ts";
 
 /** Name and version that every result carries; the version changes whenever a number may. */
 export const ENGINE = "ogee-engine 1.0.0";
+
+/**
+ * Refuses a file by its first part (`FIRST_PART_BYTES`) where that is none of a recording for this
+ * protocol; what it lets pass, {@link readRecording} may still refuse.
+ *
+ * @throws EngineError
+ */
+export function checkStart(part: Uint8Array, protocol: Protocol): void {
+  checkDimensions(protocol);
+  checkFirstPart(part, protocol.table, columnsOf(protocol));
+}
 
 /** Bytes → Signals. @throws EngineError; what is wrong with the protocol before what is wrong with the file */
 export function readRecording(bytes: Uint8Array, protocol: Protocol): Signals {
@@ -143,7 +155,7 @@ export function analyze(input: {
   windows: WindowsDocument | null;
 }): Result {
   const { protocol, recordings, windows } = input;
-  checkAxes(protocol, windows);
+  checkAxes(protocol, windows, [...recordings, ...input.rig]);
   const rigs = rigsOf(protocol, input.rig, windows);
   const analysed = recordings.flatMap((recording, index) =>
     analyseRecording(protocol, recording, index, rigs, windows),
@@ -243,9 +255,14 @@ function checkSpans(protocol: Protocol, rateHz: number): void {
   }
 }
 
-function checkAxes(protocol: Protocol, windows: WindowsDocument | null): void {
-  for (const [index, { axis }] of (windows?.windows ?? []).entries()) {
+function checkAxes(
+  protocol: Protocol,
+  windows: WindowsDocument | null,
+  recordings: readonly RecordingInput[],
+): void {
+  for (const [index, { axis, recording_sha256 }] of (windows?.windows ?? []).entries()) {
     if (protocol.axes.some(({ name }) => name === axis)) continue;
+    if (!recordings.some(({ sha256 }) => sha256 === recording_sha256)) continue;
     throw new EngineError("protocol", `The protocol has no axis "${axis}", which a window names.`, {
       field: `windows[${index}].axis`,
     });

@@ -69,9 +69,6 @@ export interface EmgProtocol {
   muscle: string;
   column: string;
   unit: Unit;
-  gain?: number;
-  offset?: number;
-  sign?: 1 | -1;
   /** Level in V that is 1. */
   reference?: number;
 }

@@ -2,11 +2,14 @@ import { spawnSync } from "node:child_process";
 import { createHash } from "node:crypto";
 import {
   existsSync,
+  lstatSync,
   mkdirSync,
   mkdtempSync,
   readdirSync,
   readFileSync,
   rmSync,
+  symlinkSync,
+  truncateSync,
   writeFileSync,
 } from "node:fs";
 import { tmpdir } from "node:os";
@@ -198,9 +201,33 @@ describe("the headless command", { timeout: PATIENCE_MS * 3 }, () => {
     const sha = createHash("sha256").update(readFileSync(SECOND)).digest("hex");
     const near = [1.3721, 1.3722].map((onset_s) => ({ ...entry, recording_sha256: sha, onset_s }));
     expect(await refused("w5.json", { version: 1, windows: near })).toContain("same sample");
-    expect(await refused("w4.json", { version: 1, windows: [{ ...entry, axis: "PS" }] })).toContain(
-      "axis",
+    const foreign = { ...entry, recording_sha256: sha, axis: "PS" };
+    expect(await refused("w4.json", { version: 1, windows: [foreign] })).toContain(
+      "windows.0.axis",
     );
+  });
+
+  it("lets windows of other recordings be, whatever their axis, and takes those of the empty rig", async () => {
+    const sha = (path: string) => createHash("sha256").update(readFileSync(path)).digest("hex");
+    const entry = { onset_s: 1.372, window_ms: [0, 80], included: true, reason: null };
+    const windows = file(
+      "of-others.json",
+      JSON.stringify({
+        version: 1,
+        windows: [
+          { ...entry, recording_sha256: "0".repeat(64), axis: "PS" },
+          { ...entry, recording_sha256: sha(EMPTY), axis: "FE" },
+        ],
+      }),
+    );
+    const given = await answer([
+      ...[SECOND, "--rig", EMPTY, "--windows", windows, "--protocol", PROTOCOL],
+    ]);
+    expect(given.exit).toBe(0);
+    const result = JSON.parse(given.stdout) as Result;
+    // One window of the rig has no spread.
+    expect(result.rig.FE?.K_sd).toBeNull();
+    expect(result.windows.length).toBeGreaterThan(4);
   });
 
   it("ends with 3 and names the first bad recording, with its line, and makes no FILE", async () => {
@@ -216,6 +243,32 @@ describe("the headless command", { timeout: PATIENCE_MS * 3 }, () => {
       `analyze: ${missing}: There is no such file.`,
     );
     expect(await refusal([folder, "--protocol", PROTOCOL], 3)).toContain("folder");
+  });
+
+  it("refuses by their start what is far too large and no recording, and a pipe without an end", async () => {
+    const zeros = join(folder, "zeros.bin");
+    writeFileSync(zeros, "");
+    truncateSync(zeros, 3 * 1024 ** 3);
+    const began = performance.now();
+    expect(await refusal([zeros, "--protocol", PROTOCOL], 3)).toMatch(
+      `analyze: ${zeros}:1: Line 1 holds a byte of zero`,
+    );
+    expect(performance.now() - began).toBeLessThan(10_000);
+    truncateSync(zeros, 2 ** 43);
+    expect(await refusal([zeros, "--protocol", PROTOCOL], 3)).toMatch(/ larger than | memory/);
+    expect(await refusal(["/dev/zero", "--protocol", PROTOCOL], 3)).toContain("byte of zero");
+    expect(await refusal([SECOND, "--protocol", "/dev/zero"], 2)).toContain("larger than 1 MiB");
+  });
+
+  it("writes through a link and leaves it one", async () => {
+    const target = file("target.json", "old");
+    const link = join(folder, "link.json");
+    symlinkSync(target, link);
+    expect(await answer([SECOND, "--protocol", PROTOCOL, "--out", link])).toMatchObject({
+      exit: 0,
+    });
+    expect(lstatSync(link).isSymbolicLink()).toBe(true);
+    expect(readFileSync(target, "utf8")).toContain("result_version");
   });
 
   it("ends with 2 where FILE cannot be made, and never takes the place of what it reads", async () => {

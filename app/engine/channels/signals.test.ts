@@ -271,7 +271,7 @@ describe("toSignals", () => {
       ...PROTOCOL,
       axes: axisWith({ limb_angle: { column: "limb", unit: "mrad", gain: 1, offset: 0, sign: 1 } }),
       emg: [
-        { muscle: "soleus", column: "e1", unit: "mV", gain: 0.5, offset: 1, sign: -1 },
+        { muscle: "soleus", column: "e1", unit: "mV" },
         { muscle: "tibialis anterior", column: "e2", unit: "uV", reference: 0.0005 },
         { muscle: "peroneus", column: "e3", unit: "1" },
       ],
@@ -294,7 +294,7 @@ describe("toSignals", () => {
       ["tibialis anterior", "1"],
       ["peroneus", "1"],
     ]);
-    expect(found.emg[0]?.channel.si[5]).toBeCloseTo(-0.002, 15);
+    expect(found.emg[0]?.channel.si[5]).toBe(0.005);
     expect(found.emg[1]?.channel.si[5]).toBeCloseTo(0.1, 15);
     expect(found.emg[2]?.channel.si[5]).toBe(0.05);
     expect([found.trigger?.[20], found.trigger?.[21]]).toEqual([0, 5]);

@@ -14,6 +14,8 @@ const WEAK_CONDITION = 30;
 const ILL_CONDITION = 100;
 /** Samples that one period of the cut-off should have. */
 const SAMPLES_PER_PERIOD = 20;
+/** A measured rate is off by some 1e-9: 50 Hz at 999.9999999 Hz has its 20 samples. */
+const ROUNDING = 1e-6;
 
 /** What one fit's own numbers say, of a window or pooled. */
 export function fitFlags(
@@ -41,7 +43,7 @@ export function modelFlags(model: ImpedanceModel): FlagCode[] {
 
 /** Fewer than 20 samples in one period of the cut-off. */
 export function isCoarse(filter: FilterProtocol | null, rateHz: number): boolean {
-  return filter !== null && rateHz / filter.cutoff_hz < SAMPLES_PER_PERIOD;
+  return filter !== null && rateHz / filter.cutoff_hz < SAMPLES_PER_PERIOD - ROUNDING;
 }
 
 /**
@@ -65,7 +67,7 @@ export function isNearEdge(
   rateHz: number,
 ): boolean {
   if (filter === null) return false;
-  const period = rateHz / filter.cutoff_hz;
+  const period = rateHz / filter.cutoff_hz - ROUNDING;
   const segment = segments.find(({ start, end }) => start <= span.spanStart && span.spanEnd < end);
   if (segment === undefined) return false;
   return span.spanStart - segment.start < period || segment.end - 1 - span.spanEnd < period;

@@ -1,4 +1,5 @@
 import { leastSquares } from "#app/engine/math/least-squares.ts";
+import { sumOfSquares } from "#app/engine/math/moments.ts";
 import { nonnegativeLeastSquares } from "#app/engine/math/nonnegative.ts";
 import type {
   Impedance,
@@ -40,6 +41,10 @@ export function fitModel(columns: WindowColumns, model: ImpedanceModel): ModelFi
   if (n < SAMPLES_PER_TERM * model.free.length) return { status: "too_short" };
   const regressors = model.free.map((term) => columnOf(columns, term));
   const torque = withoutFixed(columns, model);
+  // A gain or a given term of 1e200 leaves what no sum of squares can hold.
+  if (![...regressors, torque].every((x) => Number.isFinite(sumOfSquares(x)))) {
+    return { status: "singular" };
+  }
   const bound = boundTerms(regressors, torque, model);
   if (bound === null) return { status: "singular" };
 

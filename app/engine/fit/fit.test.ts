@@ -1,5 +1,11 @@
 import { describe, expect, it } from "vitest";
-import { fitFlags, isNearEdge, isPastReflexLimit, modelFlags } from "#app/engine/fit/fit-flags.ts";
+import {
+  fitFlags,
+  isCoarse,
+  isNearEdge,
+  isPastReflexLimit,
+  modelFlags,
+} from "#app/engine/fit/fit-flags.ts";
 import { fitModel, impedanceModel } from "#app/engine/fit/fit-model.ts";
 import { movementFlags } from "#app/engine/fit/movement-flags.ts";
 import { hasLateResidual, qualityOf } from "#app/engine/fit/quality.ts";
@@ -74,6 +80,12 @@ describe("the model T = K θ + B ω + I α", () => {
     expect(fitModel(twice, model({ nonnegative: true })).status).toBe("singular");
   });
 
+  it("is singular where a value leaves the range of numbers", () => {
+    const huge = { ...exact, angleRad: exact.angleRad.map((x) => 1e200 * x) };
+    expect(fitModel(huge, model()).status).toBe("singular");
+    expect(fitModel(exact, model({ fixed: { K: 1e308 } })).status).toBe("singular");
+  });
+
   it("shares are largest torques over their sum", () => {
     // Largest |θ|, |ω|, |α|: 8, 2, 5.
     expect(sharesOf(exact, { K: 1, B: -2, I: 0.8 })).toEqual({ K: 0.5, B: 0.25, I: 0.25 });
@@ -145,6 +157,15 @@ describe("flags", () => {
     expect(isPastReflexLimit(40.1, filter, 50)).toBe(true);
     expect(isPastReflexLimit(50, null, 50)).toBe(false);
     expect(isPastReflexLimit(50, { ...filter, cutoff_hz: 400 }, 50)).toBe(false);
+  });
+
+  it("20 samples in a period of the cut-off are not coarse, also at a rate measured a hair below", () => {
+    const filter = { family: "butterworth" as const, order: 2, cutoff_hz: 50 };
+    expect([1000, 999.9999999, 999].map((rateHz) => isCoarse(filter, rateHz))).toEqual([
+      false,
+      false,
+      true,
+    ]);
   });
 
   it("a span is near an edge within one period of the cut-off", () => {

@@ -62,7 +62,7 @@ function refuseNul(bytes: Uint8Array): void {
   if (at < 0) return;
   let line = 1;
   for (let i = 0; i < at; i++) if (bytes[i] === 0x0a) line++;
-  const sixteen = at < 2 && (bytes[at + 2] === 0 || bytes.length <= 4);
+  const sixteen = at < 2 && bytes[at + 1] !== 0 && (bytes[at + 2] === 0 || bytes.length <= 4);
   throw new EngineError(
     "unreadable",
     sixteen
@@ -79,7 +79,7 @@ function isUtf8(bytes: Uint8Array, cut: boolean): boolean {
   const words = new Uint32Array(
     bytes.buffer,
     bytes.byteOffset + aligned,
-    Math.max(0, length - aligned) >> 2,
+    Math.max(0, length - aligned) >>> 2,
   );
   let i = 0;
   while (i < length) {
@@ -88,7 +88,7 @@ function isUtf8(bytes: Uint8Array, cut: boolean): boolean {
       i++;
       // Nearly all of a recording is ASCII: four bytes at a time.
       if (((i - aligned) & 3) === 0) {
-        let w = (i - aligned) >> 2;
+        let w = (i - aligned) >>> 2;
         while (w < words.length && ((words[w] as number) & 0x80808080) === 0) w++;
         i = aligned + 4 * w;
       }
@@ -116,7 +116,7 @@ function isUtf8(bytes: Uint8Array, cut: boolean): boolean {
 
 /** A half without its partner becomes U+FFFD; an odd last byte is left out. */
 function utf8FromUtf16(file: Uint8Array, littleEndian: boolean): Uint8Array {
-  const units = file.length >> 1;
+  const units = Math.floor(file.length / 2);
   const high = littleEndian ? 1 : 0;
   const unit = (i: number): number =>
     i < units ? ((file[2 * i + high] as number) << 8) | (file[2 * i + 1 - high] as number) : -1;

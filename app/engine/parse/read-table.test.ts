@@ -1,7 +1,7 @@
 import fc from "fast-check";
 import { describe, expect, it } from "vitest";
 import { previewTable } from "#app/engine/parse/preview.ts";
-import { readTable } from "#app/engine/parse/read-table.ts";
+import { checkFirstPart, readTable } from "#app/engine/parse/read-table.ts";
 import type { TableProtocol } from "#app/engine/types.ts";
 
 const AUTO: TableProtocol = { separator: "auto", decimal: "auto", header_row: "auto" };
@@ -439,6 +439,28 @@ describe("the scanner and Number", () => {
       }),
       { numRuns: 2000 },
     );
+  });
+});
+
+it("a number of half a million digits is one", () => {
+  const long = `0.${"1".repeat(500_000)}`;
+  expect(columnOf(`a,b\n0,${long}\n1,2\n`, "b")).toEqual([Number(long), 2]);
+});
+
+describe("checkFirstPart", () => {
+  const part = (text: string, columns = NAMES, table: Partial<TableProtocol> = {}) =>
+    checkFirstPart(new TextEncoder().encode(text), { ...AUTO, ...table }, columns);
+  const rows = "0,0.5,1\n".repeat(40_000);
+
+  it("lets pass what may be a recording, cut anywhere", () => {
+    expect(() => part(`t,ang,trq\n${rows}`.slice(0, 300_001))).not.toThrow();
+    expect(() => part(`x\n${rows}`, NAMES, { header_row: 90_000 })).not.toThrow();
+  });
+
+  it("refuses a byte of zero, a part without names and one without a mapped name", () => {
+    expect(() => part(`t,ang,trq\n${rows}\0`)).toThrow(/byte of zero/);
+    expect(() => part(rows)).toThrow(/column names/);
+    expect(() => part(`t,ang,x\n${rows}`)).toThrow(/"trq" is missing/);
   });
 });
 

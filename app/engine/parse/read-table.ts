@@ -41,6 +41,28 @@ export function readTable(
   };
 }
 
+/** A first part that holds whatever tells a file's layout: 256 KiB, or three lines of the longest kind. */
+export const FIRST_PART_BYTES = 4 * 1024 * 1024;
+
+/**
+ * Whether a large file's first part can be that of a recording: what is plainly none (a film, an
+ * archive, a disk's worth of zeros, a table of something else) need not be read to its end.
+ *
+ * @param part  the first `FIRST_PART_BYTES`
+ * @throws EngineError as {@link readTable}
+ */
+export function checkFirstPart(
+  part: Uint8Array,
+  table: TableProtocol,
+  columns: readonly string[],
+): void {
+  const decoded = decode(part, true);
+  // Names in a stated line may stand behind the first part.
+  if (table.header_row !== "auto") return;
+  const names = [...new Set(columns.map((name) => name.trim()))];
+  slotsOf(findLayout(decoded, table, true, names), names);
+}
+
 /** For each column of the file its place among `names`, or −1. */
 function slotsOf(layout: Layout, names: readonly string[]): Int32Array {
   const { header, dialect } = layout;

@@ -305,7 +305,7 @@ function plainNumber(
   }
   if (digits === 0) return -1;
   if (value >= EXACT_BELOW || exponent < -22 || exponent > 22) {
-    const text = String.fromCharCode.apply(null, bytes.subarray(at, p) as unknown as number[]);
+    const text = textOf(bytes.subarray(at, p), "utf-8");
     value = Math.abs(Number(text.replace(",", ".")));
   } else if (exponent < 0) value /= TENS[-exponent] as number;
   else if (exponent > 0) value *= TENS[exponent] as number;

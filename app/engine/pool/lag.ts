@@ -10,7 +10,7 @@ import { parabolaVertex } from "#app/engine/math/parabola.ts";
 export function lagEstimateMs(profiles: readonly Float64Array[], rateHz: number): number | null {
   if (profiles.length === 0) return null;
   // Rates that differ in the last digits may reach one sample less far.
-  const length = Math.min(...profiles.map((profile) => profile.length));
+  const length = profiles.reduce((least, profile) => Math.min(least, profile.length), Infinity);
   if (length < 3) return null;
   const sums = new Float64Array(length);
   for (const profile of profiles) {

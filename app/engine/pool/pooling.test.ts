@@ -34,6 +34,12 @@ describe("stack and mean trace", () => {
     expect([...(trace?.columns.torqueNm ?? [])]).toEqual([6, 11.5]);
   });
 
+  it("half a million windows have one too, and a delay", () => {
+    const many = <T>(each: T): T[] => new Array<T>(500_000).fill(each);
+    expect(meanTrace(many({ first: 0, columns: columnsOf([1]) }))?.columns.torqueNm[0]).toBe(1);
+    expect(lagEstimateMs(many(Float64Array.of(2, 1, 2)), 1000)).toBe(0);
+  });
+
   it("there is none of windows that do not meet, or of none", () => {
     const apart = [
       { first: 0, columns: columnsOf([1]) },

@@ -27,10 +27,12 @@ export function stackColumns(windows: readonly WindowColumns[]): WindowColumns {
  */
 export function meanTrace(windows: readonly PlacedColumns[]): PlacedColumns | null {
   if (windows.length === 0) return null;
-  const first = Math.max(...windows.map((window) => window.first));
-  const last = Math.min(
-    ...windows.map((window) => window.first + window.columns.torqueNm.length - 1),
-  );
+  let first = Number.NEGATIVE_INFINITY;
+  let last = Number.POSITIVE_INFINITY;
+  for (const window of windows) {
+    first = Math.max(first, window.first);
+    last = Math.min(last, window.first + window.columns.torqueNm.length - 1);
+  }
   if (last < first) return null;
   const columns = emptyColumns(last - first + 1);
   for (const window of windows) {
