@@ -61,7 +61,8 @@ export interface StaleSetUp {
 
 const STALE_STUDY: StaleSetUp = {
   status: "stale",
-  sentence: "This study was changed meanwhile: load the page again, then make your change.",
+  sentence:
+    "This study was changed meanwhile. What stands now is shown, and what you typed is still in its fields: save again to put yours in its place.",
 };
 
 // ---------------------------------------------------------------- a whole study
@@ -358,7 +359,7 @@ export async function changeParticipant(
     if (participant.version !== input.version) {
       return {
         status: "stale",
-        sentence: `${participant.code} was changed meanwhile: load the page again, then make your change.`,
+        sentence: `${participant.code} was changed meanwhile. What stands now is shown, and what you typed is still in its fields: save again to put yours in its place.`,
       };
     }
     const same = await findParticipantByCode(tx, participant.studyId, values.code);

@@ -1,5 +1,12 @@
 import type { ReactNode } from "react";
-import { data, Form, Link, redirect, useNavigation } from "react-router";
+import {
+  data,
+  Form,
+  Link,
+  redirect,
+  type ShouldRevalidateFunctionArgs,
+  useNavigation,
+} from "react-router";
 import { deskContext } from "#app/auth/context.server.ts";
 import { requireActor } from "#app/auth/require.server.ts";
 import { Button, ButtonLink } from "#app/components/button.tsx";
@@ -98,6 +105,14 @@ export async function action({ request, context, params }: Route.ActionArgs) {
     case "stale":
       return data({ fields, problems: [{ field: "", sentence: added.sentence }] }, { status: 409 });
   }
+}
+
+/** A refusal because of somebody else's change shows that change: what stands now is read again. */
+export function shouldRevalidate({
+  actionStatus,
+  defaultShouldRevalidate,
+}: ShouldRevalidateFunctionArgs): boolean {
+  return actionStatus === 409 || defaultShouldRevalidate;
 }
 
 export default function Protocols({ loaderData, actionData }: Route.ComponentProps) {

@@ -1,5 +1,12 @@
 import type { ReactNode } from "react";
-import { data, Form, Link, redirect, useNavigation } from "react-router";
+import {
+  data,
+  Form,
+  Link,
+  redirect,
+  type ShouldRevalidateFunctionArgs,
+  useNavigation,
+} from "react-router";
 import type { z } from "zod";
 import { deskContext } from "#app/auth/context.server.ts";
 import { requireActor } from "#app/auth/require.server.ts";
@@ -104,16 +111,19 @@ export async function action({ request, context, params }: Route.ActionArgs) {
   const outcome = await change();
   switch (outcome.status) {
     case "invalid":
-      return data({ form, id, typed, problems: outcome.problems, said: null }, { status: 400 });
+      return data(
+        { form, id, typed, problems: outcome.problems, said: null, isStale: false },
+        { status: 400 },
+      );
     case "refused": {
       const problems: Record<string, string> =
         outcome.field === null ? {} : { [outcome.field]: outcome.sentence };
       const said = outcome.field === null ? outcome.sentence : null;
-      return data({ form, id, typed, problems, said }, { status: 400 });
+      return data({ form, id, typed, problems, said, isStale: false }, { status: 400 });
     }
     case "stale":
       return data(
-        { form, id, typed, problems: NO_PROBLEMS, said: outcome.sentence },
+        { form, id, typed, problems: NO_PROBLEMS, said: outcome.sentence, isStale: true },
         { status: 409 },
       );
     default:
@@ -209,6 +219,14 @@ function anchorOf(form: FormName): string {
 
 type Answer = Route.ComponentProps["actionData"];
 
+/** A refusal because of somebody else's change shows that change: what stands now is read again. */
+export function shouldRevalidate({
+  actionStatus,
+  defaultShouldRevalidate,
+}: ShouldRevalidateFunctionArgs): boolean {
+  return actionStatus === 409 || defaultShouldRevalidate;
+}
+
 export default function SetUp({ loaderData, actionData }: Route.ComponentProps) {
   const { study, participants, rigs, changing } = loaderData;
   const version = study.version;
@@ -226,6 +244,11 @@ export default function SetUp({ loaderData, actionData }: Route.ComponentProps) 
 
       <Part id="study" title="Study and rig">
         <ChangeForm form="study" label="Study and rig" version={version}>
+          <StandsNow
+            answer={actionData}
+            form="study"
+            words={`${study.name}, ${study.rig?.name ?? "no rig"}`}
+          />
           <StudyFields
             bind={bindOf("study", { name: study.name, rigId: study.rig?.id ?? "" })}
             rigs={rigs}
@@ -273,6 +296,12 @@ export default function SetUp({ loaderData, actionData }: Route.ComponentProps) 
                   label={`Change ${condition.name}`}
                   version={version}
                 >
+                  <StandsNow
+                    answer={actionData}
+                    form="change_condition"
+                    id={condition.id}
+                    words={conditionInWords(condition)}
+                  />
                   <ConditionFields
                     actions={<RowEnd form="change_condition" />}
                     bind={bindOf(
@@ -379,6 +408,12 @@ export default function SetUp({ loaderData, actionData }: Route.ComponentProps) 
                   label={`Change ${participant.code}`}
                   version={participant.version}
                 >
+                  <StandsNow
+                    answer={actionData}
+                    form="change_participant"
+                    id={participant.id}
+                    words={participantInWords(participant)}
+                  />
                   <ParticipantFields
                     actions={<RowEnd form="change_participant" />}
                     bind={bindOf(
@@ -436,6 +471,61 @@ export default function SetUp({ loaderData, actionData }: Route.ComponentProps) 
       <Cautions length="full" />
     </>
   );
+}
+
+/** The other state, above the fields that keep what was typed. */
+function StandsNow({
+  answer,
+  form,
+  id = "",
+  words,
+}: {
+  answer: Answer;
+  form: FormName;
+  id?: string;
+  words: string;
+}) {
+  if (!answer?.isStale || answer.form !== form || answer.id !== id) return null;
+  return (
+    <p className="mb-2 border-l-2 border-ink pl-2.5">
+      Stands now: <span className="font-semibold">{words}</span>
+    </p>
+  );
+}
+
+function conditionInWords(condition: {
+  name: string;
+  level: number | null;
+  levelUnit: string | null;
+  isBaseline: boolean;
+  isActive: boolean;
+}): string {
+  const level = condition.level === null ? null : `${condition.level} ${condition.levelUnit ?? ""}`;
+  return [
+    condition.name,
+    level,
+    condition.isBaseline ? "the baseline" : null,
+    condition.isActive ? "active" : null,
+  ]
+    .filter((part) => part !== null)
+    .join(", ");
+}
+
+function participantInWords(participant: {
+  code: string;
+  testedSide: string;
+  bodyMassKg: number | null;
+  heightM: number | null;
+}): string {
+  const { code, testedSide, bodyMassKg, heightM } = participant;
+  return [
+    code,
+    testedSide,
+    bodyMassKg === null ? null : `${bodyMassKg} kg`,
+    heightM === null ? null : `${heightM} m`,
+  ]
+    .filter((part) => part !== null)
+    .join(", ");
 }
 
 /** What was typed wins over what is stored, in the form that was sent. */
