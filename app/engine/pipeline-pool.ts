@@ -271,7 +271,7 @@ function estimatesAt(
     if (!groups.some(({ windows }) => windows.some(isHere))) continue;
     const recorded = signals.axes[axis] as AxisSignals;
     const suits = cutoffHz === null || cutoffHz < signals.rateHz / 2;
-    const prepared = suits ? prepareAxis(signals, recorded, { ...protocol, filter }) : null;
+    const prepared = suits ? prepareAxis(signals, recorded, { ...protocol, filter }, "fit") : null;
     const cut = (place: Place, endMs: number): WindowColumns | null => {
       const startMs = place.windowMs[0];
       if (prepared === null || endMs <= startMs) return null;

@@ -39,13 +39,19 @@ export function xoshiro128(w0: number, w1: number, w2: number, w3: number): Rand
     return result;
   }
 
+  let bound = Number.NaN;
+  let limit = 0;
   function nextInt(n: number): number {
-    if (!Number.isInteger(n) || n < 1 || n > 2 ** 32) throw new RangeError(`one of ${n}`);
-    // Values from the last, incomplete run of n are thrown away: the rest has no bias.
-    const limit = 2 ** 32 - (2 ** 32 % n);
+    if (n !== bound) {
+      if (!Number.isInteger(n) || n < 1 || n > 2 ** 32) throw new RangeError(`one of ${n}`);
+      bound = n;
+      // Values from the last, incomplete run of n are thrown away: the rest has no bias.
+      limit = 2 ** 32 - (2 ** 32 % n);
+    }
     for (;;) {
       const value = nextUint32();
-      if (value < limit) return value % n;
+      // The remainder; % is several times slower for numbers over 2^31.
+      if (value < limit) return value - n * Math.floor(value / n);
     }
   }
 

@@ -20,9 +20,16 @@ import type {
  * Segments are the stretches where time is regular and every channel of the axis has a value (the
  * torque after its delay is taken out), 20 samples or longer; each is filtered whole.
  *
+ * @param only  "fit" leaves the columns for finding onsets empty and the slip out: at each further
+ *   cut-off that is tried, the onsets are known
  * @throws EngineError "protocol" where the cut-off or the smoothing span does not suit the rate
  */
-export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Protocol): PreparedAxis {
+export function prepareAxis(
+  signals: Signals,
+  axis: AxisSignals,
+  protocol: Protocol,
+  only: "all" | "fit" = "all",
+): PreparedAxis {
   const { rateHz } = signals;
   const limb = axis.limbAngle?.si ?? null;
   const recorded = [axis.angle.si, axis.torqueNm, ...(limb ? [limb] : [])];
@@ -46,10 +53,13 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
   };
   const fitsLimb = fitsLimbAngle(protocol, axis.name);
   const angleRad = condition(fitsLimb && limb ? limb : axis.angle.si);
-  const onsetAngleRad = lowPass(axis.angle.si, segments, rateHz, {
-    order: 2,
-    cutoffHz: Math.min(protocol.onset.cutoff_hz, 0.2 * rateHz),
-  });
+  const onsetAngleRad =
+    only === "fit"
+      ? new Float64Array(0)
+      : lowPass(axis.angle.si, segments, rateHz, {
+          order: 2,
+          cutoffHz: Math.min(protocol.onset.cutoff_hz, 0.2 * rateHz),
+        });
   const stepS = 1 / rateHz;
   const first = (part: Float64Array, out: Float64Array) => fivePointFirst(part, stepS, out);
   const second = (part: Float64Array, out: Float64Array) => fivePointSecond(part, stepS, out);
@@ -60,8 +70,12 @@ export function prepareAxis(signals: Signals, axis: AxisSignals, protocol: Proto
     accelerationRadPerS2: bySegment(angleRad, segments, second),
     torqueNm: condition(torqueNm),
     onsetAngleRad,
-    onsetVelocityRadPerS: bySegment(onsetAngleRad, segments, first),
-    slipRad: limb && condition(axis.angle.si.map((rig, i) => rig - (limb[i] as number))),
+    onsetVelocityRadPerS:
+      only === "fit" ? onsetAngleRad : bySegment(onsetAngleRad, segments, first),
+    slipRad:
+      only === "fit"
+        ? null
+        : limb && condition(axis.angle.si.map((rig, i) => rig - (limb[i] as number))),
     segments,
   };
 }
