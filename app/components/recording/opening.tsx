@@ -48,7 +48,7 @@ export function Opening({
 }
 
 /** What each kind of failure asks for. */
-const TODOS: Record<string, string> = {
+const WHAT_TO_DO: Record<string, string> = {
   unreadable: "Check the file and its channel map; a corrected map is made by taking it in again.",
   protocol: "Choose another protocol version, or make one that suits this recording.",
   unreachable: "Check the connection and try again. Unsaved edits are kept on this computer.",
@@ -74,7 +74,7 @@ export function CannotOpen({
         <Mark size="sketch" />
       </span>
       <p className="font-semibold">{problem.text}</p>
-      <p>{TODOS[problem.code] ?? TODOS.stopped}</p>
+      <p>{WHAT_TO_DO[problem.code] ?? WHAT_TO_DO.stopped}</p>
       <div className="flex flex-wrap gap-2">
         <Button look="do" onClick={onRetry} type="button">
           Try again
