@@ -59,7 +59,7 @@ interface Pooling {
   placed: PlacedColumns;
   angleNoisePct: number | null;
   lagProfile: Float64Array | null;
-  /** From after the protocol's window to 400 ms or the next onset; null where it is not asked for or cut short. */
+  /** From after the protocol's window to 400 ms, the next onset or the stretch's end; null where it is not asked for. */
   tail: PlacedColumns | null;
 }
 
@@ -201,8 +201,8 @@ function tailOf(
   if (!asksForLate(protocol)) return null;
   const at = (ms: number) => span.onset + Math.round((ms * signals.rateHz) / 1000);
   const from = at(protocol.window_ms[1]) + 1;
-  const to = Math.min(at(LATE_REACH_MS), (nextOnset ?? Number.POSITIVE_INFINITY) - 1);
-  if (to < from || lastWithValue(prepared, span.end, to) < to) return null;
+  const reach = Math.min(at(LATE_REACH_MS), (nextOnset ?? Number.POSITIVE_INFINITY) - 1);
+  const to = Math.min(reach, lastWithValue(prepared, span.end, reach));
   return { first: from - span.onset, columns: cutColumns(prepared, baseline, from, to, rig) };
 }
 

@@ -412,6 +412,25 @@ describe("late torque and the reflex limit", () => {
     expect(up?.late?.apparent_stiffness).toBeCloseTo((up?.late?.peak ?? 0) / theta, 0);
   });
 
+  it("is seen as far as all windows reach, also the one that a gap cuts off", () => {
+    const peakMs = (gapS: number) => {
+      const { pooled, windows } = analyzed(
+        { extraNm: reflex, more: { gapBefore: [{ sample: gapS * RATE, seconds: 0.01 }] } },
+        short,
+      );
+      const up = pooled.find(({ direction }) => direction === "up");
+      expect([windows.length, up?.windows]).toEqual([6, 3]);
+      return [up?.late?.peak_ms ?? null, up?.late?.impulse ?? null];
+    };
+    // The first window begins about 1.006 s; two samples before a gap have no derivative.
+    const [peak] = peakMs(1.08);
+    expect(peak).toBeGreaterThan(60);
+    expect(peak).toBeLessThan(1078 - 1000);
+    const [whole] = peakMs(1.6);
+    expect(whole).toBeGreaterThan(1078 - 1000);
+    expect(peakMs(1.049)).toEqual([null, null]);
+  });
+
   it("is not defined for a window that reaches the limit, whose K it spoils", () => {
     const { pooled, windows } = analyzed({ extraNm: reflex }, { ...short, window_ms: [0, 100] });
     const up = pooled.find(({ direction }) => direction === "up");
