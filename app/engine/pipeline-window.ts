@@ -142,7 +142,7 @@ export function foundPlaces(bench: Bench): Place[] {
         )
       : findOnsets({
           velocityRadPerS: prepared.onsetVelocityRadPerS,
-          segments: prepared.segments,
+          segments: prepared.onsetSegments,
           timeS: signals.timeS,
           rateHz: signals.rateHz,
           thresholdRadPerS: bench.thresholdRadPerS,

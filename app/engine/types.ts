@@ -384,7 +384,9 @@ export interface PreparedAxis {
   onsetVelocityRadPerS: Float64Array;
   /** Rig minus limb angle, low-passed, rad; null without a second angle channel. */
   slipRad: Float64Array | null;
-  /** Gap-free stretches of this axis: time's segments broken at this axis' missing samples. */
+  /** The stretches of the onset's columns: time's segments broken at this axis' missing samples. */
+  onsetSegments: Segment[];
+  /** The stretches of what is fitted: the same, less what the torque's delay takes. */
   segments: Segment[];
 }
 

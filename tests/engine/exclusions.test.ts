@@ -72,6 +72,14 @@ describe("a window is set aside, its values null", () => {
     expect(window.background_torque).toBeCloseTo(0, 1);
   });
 
+  it("end_of_recording: the movement lies where the late torque has nothing left to give", () => {
+    expectReason(
+      recording([{ atS: 2.92, amplitudeDeg: 3, durationMs: 60 }]),
+      "end_of_recording",
+      makeProtocol({ lag_ms: 100 }),
+    );
+  });
+
   it("missing_samples: a cell in the span has no value", () => {
     expectReason(recording(oneRamp, { missing: [965] }), "missing_samples");
   });

@@ -174,6 +174,15 @@ describe("segments of an axis", () => {
     ]);
   });
 
+  it("are whole for the onsets, which are the angle's and know no delay", () => {
+    const segments = [segment(0, 120), segment(120, 300)];
+    const plain = prepare({}, undefined, { segments });
+    const late = prepare({ lag_ms: 80 }, undefined, { segments });
+    expect(late.onsetSegments).toEqual(segments);
+    expect(late.segments).toEqual([segment(0, 40), segment(120, 220)]);
+    expect(late.onsetVelocityRadPerS).toEqual(plain.onsetVelocityRadPerS);
+  });
+
   it("smoothed over 21 ms have no value in the 10 samples at each end, no derivative in 12", () => {
     const prepared = prepare({ derivative: { savitzky_golay: { polynomial: 3, span_ms: 21 } } });
     const ends = (n: number) => [

@@ -17,8 +17,9 @@ import type {
  * through the same filter, the angle's derivatives; and the rig's angle filtered less, for finding
  * onsets (a 20 Hz filter would find a 50 ms ramp 5 ms early).
  *
- * Segments are the stretches where time is regular and every channel of the axis has a value (the
- * torque after its delay is taken out), 20 samples or longer; each is filtered whole.
+ * Segments are the stretches where time is regular and every channel of the axis has a value, 20
+ * samples or longer; each is filtered whole. Where the torque's delay shortens one, what is fitted
+ * ends with it on both sides of the model; onsets are those of the angle, which has no delay.
  *
  * @param only  "fit" leaves the columns for finding onsets empty and the slip out: at each further
  *   cut-off that is tried, the onsets are known
@@ -38,9 +39,9 @@ export function prepareAxis(
     protocol.lag_ms === 0
       ? axis.torqueNm
       : shiftEarlier(axis.torqueNm, whole, rateHz, protocol.lag_ms);
-  const segments = breakAtMissing(whole, [torqueNm]).filter(
-    ({ start, end }) => end - start >= SHORTEST_SEGMENT_SAMPLES,
-  );
+  const isLongEnough = ({ start, end }: Segment) => end - start >= SHORTEST_SEGMENT_SAMPLES;
+  const onsetSegments = whole.filter(isLongEnough);
+  const segments = breakAtMissing(whole, [torqueNm]).filter(isLongEnough);
 
   const filter = filterFor(protocol, rateHz);
   const smoothing = smoothingFor(protocol.derivative, rateHz);
@@ -56,7 +57,7 @@ export function prepareAxis(
   const onsetAngleRad =
     only === "fit"
       ? new Float64Array(0)
-      : lowPass(axis.angle.si, segments, rateHz, {
+      : lowPass(axis.angle.si, onsetSegments, rateHz, {
           order: 2,
           cutoffHz: Math.min(protocol.onset.cutoff_hz, 0.2 * rateHz),
         });
@@ -71,11 +72,12 @@ export function prepareAxis(
     torqueNm: condition(torqueNm),
     onsetAngleRad,
     onsetVelocityRadPerS:
-      only === "fit" ? onsetAngleRad : bySegment(onsetAngleRad, segments, first),
+      only === "fit" ? onsetAngleRad : bySegment(onsetAngleRad, onsetSegments, first),
     slipRad:
       only === "fit"
         ? null
         : limb && condition(axis.angle.si.map((rig, i) => rig - (limb[i] as number))),
+    onsetSegments,
     segments,
   };
 }
