@@ -35,8 +35,13 @@ export function axesOfChannelMap(channelMap: string): string[] {
 
 /** The least advanced of several; "nothing" where there is none. */
 export function leastAdvanced(states: readonly CellState[]): CellState {
-  if (states.length === 0) return "nothing";
-  return CELL_STATES[Math.min(...states.map((state) => CELL_STATES.indexOf(state)))] ?? "nothing";
+  return states.length === 0 ? "nothing" : leastAdvancedOf(states);
+}
+
+/** The same where there is one at least. @throws TypeError for an empty list */
+export function leastAdvancedOf<State extends CellState>(states: readonly State[]): State {
+  const order = (state: State) => CELL_STATES.indexOf(state);
+  return states.reduce((least, state) => (order(state) < order(least) ? state : least));
 }
 
 /** Every cell of a study that has a recording; look one up by `cellKey`. */

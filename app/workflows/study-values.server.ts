@@ -1,7 +1,7 @@
 import { type CurrentResult, listCurrentResults } from "#app/db/fits.server.ts";
 import { findStudy } from "#app/db/studies.server.ts";
+import { leastAdvancedOf } from "#app/domain/cell.ts";
 import type { FitState, Verification } from "#app/domain/fit.ts";
-import { CELL_STATES } from "#app/domain/recording.ts";
 import { notFound } from "#app/domain/refusal.ts";
 import type { Actor } from "#app/domain/role.ts";
 import { windowSpread } from "#app/engine/pool/interval.ts";
@@ -141,7 +141,7 @@ function cellValue(axis: string, direction: string, fits: readonly Fit[]): Parti
       verification,
       protocolNumber,
     })),
-    state: leastAdvanced(fits.map((fit) => fit.state)),
+    state: leastAdvancedOf(fits.map((fit) => fit.state)),
     isVerified: fits.every((fit) => fit.verification === "verified"),
     protocolNumbers: [...new Set(fits.map((fit) => fit.protocolNumber))].sort((a, b) => a - b),
   };
@@ -158,9 +158,4 @@ function fixedValue(fits: readonly { model: Model }[], term: Term): number | nul
   const values = new Set(fits.map(({ model }) => model.fixed[term] ?? null));
   const [only] = values;
   return values.size === 1 ? (only ?? null) : null;
-}
-
-function leastAdvanced(states: readonly FitState[]): FitState {
-  const order = (state: FitState) => CELL_STATES.indexOf(state);
-  return states.reduce((least, state) => (order(state) < order(least) ? state : least));
 }
